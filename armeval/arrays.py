@@ -1,0 +1,49 @@
+"""Names for the arrays that travel through the program, and the one check at the door of every object."""
+
+from __future__ import annotations
+
+from typing import TypeAlias
+
+import numpy as np
+import numpy.typing as npt
+
+from armeval.errors import InputError
+
+FloatArray: TypeAlias = npt.NDArray[np.float64]
+IntArray: TypeAlias = npt.NDArray[np.int64]
+BoolArray: TypeAlias = npt.NDArray[np.bool_]
+
+
+def frozen(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> FloatArray:
+    """Give a read-only contiguous float64 array of the wanted shape.
+
+    Parameters
+    ----------
+    values
+        Anything numpy can read as numbers.
+    shape
+        Wanted length of each axis; ``None`` leaves an axis free.
+    name
+        What the array is, for the message.
+
+    Raises
+    ------
+    InputError
+        If the shape differs, or a number is not finite.
+    """
+    array = np.array(values, dtype=np.float64, order="C")
+    if array.ndim != len(shape) or any(w is not None and w != g for w, g in zip(shape, array.shape, strict=True)):
+        wanted = " x ".join("any" if w is None else str(w) for w in shape)
+        raise InputError(f"{name} has shape {array.shape}", f"give it the shape {wanted}")
+    if not np.isfinite(array).all():
+        raise InputError(f"{name} holds values that are not finite numbers", "remove NaN and infinite values")
+    array.setflags(write=False)
+    return array
+
+
+def frozen_limits(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> FloatArray:
+    """Like :func:`frozen`, but infinite values are allowed: a joint may have no limit."""
+    array = np.array(values, dtype=np.float64, order="C")
+    frozen(np.where(np.isinf(array), 0.0, array), shape, name)
+    array.setflags(write=False)
+    return array

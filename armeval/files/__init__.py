@@ -1,0 +1,1 @@
+"""From a file to a validated object, and back."""

@@ -1,0 +1,1 @@
+"""The things of the trade as frozen objects, checked once, where they are made."""

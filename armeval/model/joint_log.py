@@ -1,0 +1,59 @@
+"""The joint log: encoder angles of one lap over time."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from armeval.arrays import FloatArray, frozen
+from armeval.errors import InputError
+
+
+@dataclass(frozen=True, eq=False)
+class JointLog:
+    """What was logged during one lap, in the chain's order of joints.
+
+    Attributes
+    ----------
+    time
+        Shape (k,) [s], rising; the log's own clock.
+    angle
+        Shape (k, n) [rad or m]. Joint angles from the encoders.
+    target
+        Shape (k, n) [rad or m]. Joint targets; None where they were not logged.
+    torque
+        Shape (k, n) [N m or N]. Commanded torque at the joint; None likewise.
+    resolution
+        Shape (n,) [rad or m]. Joint angle of one encoder count; 0 where unknown.
+    lap
+        From 1, over all files of the run in file-name order.
+    source
+        The file as the user named it.
+    """
+
+    time: FloatArray
+    angle: FloatArray
+    target: FloatArray | None = None
+    torque: FloatArray | None = None
+    resolution: FloatArray | None = None
+    lap: int = 1
+    source: str = ""
+
+    def __post_init__(self) -> None:
+        time = frozen(self.time, (None,), "log time")
+        k = len(time)
+        n = np.shape(self.angle)[-1]
+        object.__setattr__(self, "time", time)
+        object.__setattr__(self, "angle", frozen(self.angle, (k, n), "log angle"))
+        for name in ("target", "torque"):
+            value = getattr(self, name)
+            if value is not None:
+                object.__setattr__(self, name, frozen(value, (k, n), f"log {name}"))
+        steps = np.zeros(n) if self.resolution is None else self.resolution
+        object.__setattr__(self, "resolution", frozen(steps, (n,), "encoder resolution"))
+        if k < 2:
+            raise InputError(f"the log has {k} row", "log a whole lap", file=self.source)
+        if (np.diff(time) <= 0.0).any():
+            row = int(np.argmax(np.diff(time) <= 0.0)) + 1
+            raise InputError("time does not rise", "remove the row", file=self.source, place=f"sample {row + 1}")

@@ -1,0 +1,1 @@
+"""A result and axes in, the same axes out."""

@@ -1,0 +1,1 @@
+"""Results to a report with its data beside it."""
