@@ -11,6 +11,10 @@ from typing import Literal
 Level = Literal["error", "warning"]
 
 
+class InputWarning(UserWarning):
+    """Something doubtful in an input that does not stop the work; its text is a :class:`Finding`'s."""
+
+
 @dataclass(frozen=True)
 class Finding:
     """One thing that is wrong or doubtful in an input.
