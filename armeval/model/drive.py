@@ -53,6 +53,8 @@ class Drive:
         The motor's cog map (motor side); None: no cogging known.
     index_offset
         Motor angle [rad] at which the joint reads zero.
+    slides
+        Whether the joint slides.
     """
 
     joint: str
@@ -76,6 +78,7 @@ class Drive:
     rest_angle: float | None = None
     cog_map: CogMap | None = None
     index_offset: float = 0.0
+    slides: bool = False
 
     def __post_init__(self) -> None:
         def refuse(key: str, what: str, mend: str) -> None:
@@ -114,8 +117,10 @@ class Drive:
         """Joint angle [rad] of one encoder count; 0 for an ideal encoder.
 
         A count of a turn is 2 pi / counts on what the encoder sits on; motor side, that is divided by the gear ratio.
+        An encoder on a joint that slides counts metres instead.
         """
         if self.encoder_counts == 0.0:
             return 0.0
-        turn = 2.0 * math.pi / self.encoder_counts
-        return turn / abs(self.gear_ratio) if self.encoder_on == "motor" else turn
+        if self.encoder_on == "joint":
+            return (1.0 if self.slides else 2.0 * math.pi) / self.encoder_counts
+        return 2.0 * math.pi / self.encoder_counts / abs(self.gear_ratio)

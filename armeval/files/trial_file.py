@@ -1,0 +1,111 @@
+"""trial.toml to trial: the arm, the path and the logs of the runs that it names."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+
+from armeval.errors import Findings, InputError
+from armeval.files.arm_file import ArmReading, load_arm
+from armeval.files.logs import find_logs, read_logs
+from armeval.files.reading import existing_file
+from armeval.files.toml_file import check_schema, read_toml, validate
+from armeval.files.trial_table import TRIAL_SCHEMA, TrialTable
+from armeval.model.planned_path import PlannedPath
+from armeval.model.trial import Run, Trial
+from armeval.progress import Progress, silent
+
+
+def read_trial(path: str | os.PathLike[str], *, findings: Findings | None = None, progress: Progress = silent) -> Trial:
+    """Read a trial: ``trial.toml``, and the arm, path and logs that it names.
+
+    Parameters
+    ----------
+    path
+        The ``trial.toml``; other files are named relative to it.
+    findings
+        Gathers warnings too; they stand in ``Trial.findings`` in any case.
+    progress
+        Told how many logs are read.
+
+    Raises
+    ------
+    InputError
+        If anything in any of the files cannot be used; with all faults of all of them.
+    """
+    found = Findings(os.fspath(path))
+    try:
+        trial = _load(path, found, progress)
+    except InputError as fault:
+        found.take(fault)
+    found.raise_errors()
+    if findings is not None:
+        findings.extend(found.warnings)
+    return trial
+
+
+def _load(path: str | os.PathLike[str], found: Findings, progress: Progress) -> Trial:
+    content = read_toml(path)
+    if not check_schema(content, TRIAL_SCHEMA, found):
+        found.raise_errors()
+    table = validate(TrialTable, content, found)
+    folder = Path(path).parent
+    # Faults in the trial's own file do not hide those in the files that it names.
+    named = {key: content[key] for key in ("arm", "path") if isinstance(content.get(key), str)}
+    reading = load_arm(folder / named["arm"], found) if "arm" in named else ArmReading()
+    planned = _path(folder / named["path"], reading, found) if "path" in named else None
+    runs, logs = _runs(table, folder, reading, found, progress) if table is not None else ((), ())
+    if table is None or reading.arm is None or planned is None or found.has_errors:
+        raise InputError.of(found.found)
+    if planned.time is not None:
+        for key in ("feed", "acceleration"):
+            if getattr(table, key) is not None:
+                found.warning("the path has its own time; this is not used", "take it out", place=key)
+    corner = {} if table.corner_angle is None else {"corner_angle": table.corner_angle}
+    return Trial(
+        title=Path(path).absolute().parent.name if table.title is None else table.title,
+        arm=reading.arm,
+        path=planned,
+        runs=runs,
+        feed=table.feed,
+        acceleration=table.acceleration,
+        compensation=table.compensation.value(),
+        sticking=table.sticking.value(),
+        findings=found.warnings,
+        files=(os.fspath(path), *reading.files, os.fspath(folder / table.path), *logs),
+        source=os.fspath(path),
+        **corner,
+    )
+
+
+def _path(file: Path, reading: ArmReading, found: Findings) -> PlannedPath | None:
+    from armeval.files.path_file import read_path
+
+    try:
+        arm = reading.arm or reading.stand_in
+        if arm is None:  # no joints to look for in its header; at least it must be there
+            existing_file(file)
+            return None
+        return read_path(file, arm.joints, [bool(slides) for slides in arm.chain.prismatic], findings=found)
+    except InputError as fault:
+        found.take(fault)
+        return None
+
+
+def _runs(
+    table: TrialTable, folder: Path, reading: ArmReading, found: Findings, progress: Progress
+) -> tuple[tuple[Run, ...], tuple[str, ...]]:
+    """Give the runs with their laps, and the log files that were read."""
+    files = [
+        find_logs(folder, run.logs, found, place=f"[[run]] {number}, logs")
+        for number, run in enumerate(table.run, start=1)
+    ]
+    everywhere = [file for run in files for file in run]
+    for file in sorted({file for file in everywhere if everywhere.count(file) > 1}):
+        found.warning(f"`{file}` belongs to more than one run", "let each run have its own logs", place="[[run]] logs")
+    arm = reading.arm or reading.stand_in
+    if arm is None:
+        return (), ()
+    laps = read_logs(files, arm, table.columns, found, progress)
+    runs = tuple(Run(run.name, run.compensated, own) for run, own in zip(table.run, laps, strict=True))
+    return runs, tuple(os.fspath(file) for file in dict.fromkeys(everywhere))
