@@ -6,9 +6,11 @@ from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
+import numpy.typing as npt
 
 from armeval.arrays import FloatArray, frozen
 from armeval.errors import InputError
+from armeval.kernels.harmonics import ComplexArray, harmonic_series
 
 CogQuantity = Literal["cog_torque", "hold_torque", "hold_current", "hold_voltage", "spin_acceleration"]
 
@@ -35,7 +37,12 @@ class CogMap:
     removed_mean
         Mean that was taken off [N m]; with one direction only it is friction, load or sensor offset.
     widest_gap
-        Largest angle between neighbouring measured angles [rad].
+        Largest angle between neighbouring measured angles [rad], in the sparser direction.
+    bandwidth
+        Highest order that the samples support; the map holds none above. 0 stands for all that m entries hold.
+    direction_lag
+        Angle [rad] by which each direction's map trails their mean (positive: in its own turning direction); it
+        shrinks order N in the mean by cos(N lag). None where only one direction was measured.
     directions
         How many turning directions were measured, 1 or 2.
     samples
@@ -55,6 +62,8 @@ class CogMap:
     noise_from: Literal["repeats", "residual", "none"] = "none"
     removed_mean: float = 0.0
     widest_gap: float = 0.0
+    bandwidth: int = 0
+    direction_lag: float | None = None
     directions: int = 1
     samples: int = 0
     distinct: int = 0
@@ -66,6 +75,13 @@ class CogMap:
         if len(torque) < 8:
             raise InputError(f"the cog map has {len(torque)} entries", "give at least 8 angles a turn")
         object.__setattr__(self, "torque", torque)
+        if not 0 <= self.bandwidth <= len(torque) // 2:
+            raise InputError(
+                f"the cog map's bandwidth is {self.bandwidth}",
+                f"{len(torque)} entries hold orders 1 to {len(torque) // 2}",
+            )
+        if self.bandwidth == 0:
+            object.__setattr__(self, "bandwidth", len(torque) // 2)
         if self.friction_ripple is not None:
             object.__setattr__(self, "friction_ripple", frozen(self.friction_ripple, (len(torque),), "friction ripple"))
 
@@ -75,9 +91,17 @@ class CogMap:
         return 2.0 * np.pi * np.arange(len(self.torque)) / len(self.torque)
 
     @property
-    def spectrum(self) -> FloatArray:
-        """Shape (m // 2 + 1,) complex. Coefficients c_k of the torque: sum over k of 2 Re(c_k exp(i k angle)), k > 0."""
-        return np.fft.rfft(self.torque) / len(self.torque)
+    def spectrum(self) -> ComplexArray:
+        """Shape (bandwidth + 1,). Coefficients c_k of the torque: sum over k > 0 of 2 Re(c_k exp(i k angle))."""
+        coefficients = np.fft.rfft(self.torque)[: self.bandwidth + 1] / len(self.torque)
+        if 2 * self.bandwidth == len(self.torque):
+            coefficients[-1] *= 0.5  # the highest order of an even table stands for k and -k at once
+        return coefficients
+
+    def at(self, angle: npt.ArrayLike) -> FloatArray:
+        """Torque at any motor angles [rad], shape as given [N m]: the trigonometric polynomial through the entries."""
+        wanted = np.asarray(angle, dtype=np.float64)
+        return harmonic_series(wanted.ravel(), self.spectrum).reshape(wanted.shape)
 
     @property
     def peak_to_peak(self) -> float:
