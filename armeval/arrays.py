@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TypeAlias
+from typing import TypeAlias, TypeGuard
 
 import numpy as np
 import numpy.typing as npt
@@ -15,7 +15,7 @@ BoolArray: TypeAlias = npt.NDArray[np.bool_]
 
 
 def frozen(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> FloatArray:
-    """Give a read-only contiguous float64 array of the wanted shape.
+    """Give a read-only contiguous float64 array of the wanted shape: a copy, unless the values are one already.
 
     Parameters
     ----------
@@ -31,7 +31,7 @@ def frozen(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> F
     InputError
         If the shape differs, or a number is not finite.
     """
-    array = np.array(values, dtype=np.float64, order="C")
+    array = values if _is_frozen(values) else np.array(values, dtype=np.float64, order="C")
     if array.ndim != len(shape) or any(w is not None and w != g for w, g in zip(shape, array.shape, strict=True)):
         wanted = " x ".join("any" if w is None else str(w) for w in shape)
         raise InputError(f"{name} has shape {array.shape}", f"give it the shape {wanted}")
@@ -39,6 +39,14 @@ def frozen(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> F
         raise InputError(f"{name} holds values that are not finite numbers", "remove NaN and infinite values")
     array.setflags(write=False)
     return array
+
+
+def _is_frozen(values: npt.ArrayLike) -> TypeGuard[FloatArray]:
+    """Whether nobody can write into it: long logs are then shared between objects instead of copied."""
+    if not isinstance(values, np.ndarray) or values.dtype != np.float64 or not values.flags.c_contiguous:
+        return False
+    owner = values if values.base is None else values.base
+    return not values.flags.writeable and isinstance(owner, np.ndarray) and not owner.flags.writeable
 
 
 def frozen_limits(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> FloatArray:
