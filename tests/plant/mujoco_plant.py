@@ -37,6 +37,8 @@ class PlantDrive:
     ----------
     harmonics
         True cogging torque on the rotor: (order, amplitude [N m], phase [rad]) of amplitude*sin(order*angle+phase).
+    stiffness, damping
+        Gains of ``joint_pd``; under ``tip_impedance`` they hold the posture, beside the stiffness at the tip.
     encoder_jitter
         One sigma of a reading [counts] before it is rounded to a whole count.
     encoder_counts
@@ -144,9 +146,8 @@ class Plant:
     ) -> None:
         self.drives, self.servo = tuple(drives), servo or PlantServo()
         keep_frames = '<mujoco><compiler fusestatic="false" discardvisual="true"/></mujoco>'
-        self.model = mujoco.MjModel.from_xml_string(
-            re.sub(r"(<robot\b[^>]*>)", rf"\1{keep_frames}", urdf_text, count=1)
-        )
+        urdf_text = re.sub(r"(<robot\b[^>]*>)", rf"\1{keep_frames}", urdf_text, count=1)
+        self.model = mujoco.MjModel.from_xml_string(urdf_text)
         n = self.model.nv
         if len(self.drives) != n:
             raise ValueError(f"{len(self.drives)} drives for {n} joints")
@@ -306,9 +307,7 @@ class _Firmware:
         self.limit = np.array([drive.torque_limit for drive in drives])
         self.quantum = np.array([drive.torque_step for drive in drives])
         self.dead = np.array([drive.dead_time_torque for drive in drives])
-        self.blend = (
-            1.0 if math.isinf(servo.speed_cutoff) else -math.expm1(-2 * math.pi * servo.speed_cutoff * servo.period)
-        )
+        self.blend = -math.expm1(-2.0 * math.pi * servo.speed_cutoff * servo.period)
         self.seen: FloatArray | None = None
         self.speed = np.zeros(n)
         # Torques on their way from the loop to the motor, one a plant step; the last one is held.
@@ -326,10 +325,9 @@ class _Firmware:
         last = seen if self.seen is None else self.seen
         self.speed = self.speed + self.blend * ((seen - last) / self.servo.period - self.speed)
         self.seen = seen
-        if self.servo.law == "joint_pd":
-            torque = self.stiffness * (target - seen) + self.damping * (target_speed - self.speed)
-        else:
-            torque = self._tip_impedance(seen, target, target_speed)
+        torque = self.stiffness * (target - seen) + self.damping * (target_speed - self.speed)
+        if self.servo.law == "tip_impedance":
+            torque = torque + self._tip_impedance(seen, target, target_speed)
         if self.servo.gravity_feedforward:
             torque = torque + self.plant.gravity_torque(seen)
         if self.servo.inertia_feedforward:
@@ -346,9 +344,8 @@ class _Firmware:
         wanted, wanted_speed = self.plant.tip(target)[0], self.plant.jacobian(target) @ target_speed
         jacobian = self.plant.jacobian(seen)
         error, error_speed = wanted - self.plant.tip(seen)[0], wanted_speed - jacobian @ self.speed
-        return jacobian.T @ (
-            np.array(self.servo.tip_stiffness) * error + np.array(self.servo.tip_damping) * error_speed
-        )
+        stiffness, damping = np.array(self.servo.tip_stiffness), np.array(self.servo.tip_damping)
+        return jacobian.T @ (stiffness * error + damping * error_speed)
 
     def _table(self, seen: FloatArray) -> FloatArray:
         """Joint torque of the stored table at the angle seen, linear between entries."""

@@ -31,9 +31,8 @@ def stops(points: FloatArray, corner_angle: float) -> FloatArray:
     """Indices of the points where the motion stops: the ends, and where the direction turns by more than the angle."""
     legs = np.diff(points, axis=0)
     legs /= np.linalg.norm(legs, axis=1)[:, None]
-    turned = np.arctan2(
-        np.linalg.norm(np.cross(legs[:-1], legs[1:]), axis=1), np.einsum("ij,ij->i", legs[:-1], legs[1:])
-    )
+    across, along = np.cross(legs[:-1], legs[1:]), np.einsum("ij,ij->i", legs[:-1], legs[1:])
+    turned = np.arctan2(np.linalg.norm(across, axis=1), along)
     return np.concatenate([[0], np.flatnonzero(turned > corner_angle) + 1, [len(points) - 1]])
 
 
@@ -59,7 +58,13 @@ def stretch_time(length: float, feed: float, acceleration: float) -> float:
 
 
 def plan(
-    plant: Plant, points: FloatArray, rest: FloatArray, feed: float, acceleration: float, corner_angle: float
+    plant: Plant,
+    points: FloatArray,
+    rest: FloatArray,
+    *,
+    feed: float,
+    acceleration: float,
+    corner_angle: float = np.radians(5.0),
 ) -> Plan:
     """Plan a lap along tip points of shape (p, 3) [m], joint angles starting near ``rest``."""
     period = plant.servo.period

@@ -95,7 +95,7 @@ def plover() -> str:
         range_deg=(-150.0, 150.0),
         effort=0.26,
     )
-    return urdf("plover", (base, inner, outer), "pen_tip", (0.160, 0.0, -0.060))
+    return urdf("plover", (base, inner, outer), "pen_tip", (0.160, 0.0, -0.056))
 
 
 def heron() -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -110,18 +111,19 @@ class Link:
 def urdf(name: str, links: Sequence[Link], tip: str, tip_origin: tuple[float, float, float]) -> str:
     """URDF of a serial chain: the first link is the base; the tip is fixed to the last one."""
     parts = [
-        '<?xml version="1.0"?>\n<!-- An invented arm; see NOTES.md. Solids and masses stand in tests/plant/robots.py. -->\n',
+        '<?xml version="1.0"?>\n<!-- An invented arm; NOTES.md says how masses and inertias were chosen. -->\n',
         f'<robot name="{name}">\n',
         links[0].text(),
     ]
-    for before, link in zip(links, links[1:], strict=False):
+    for before, link in itertools.pairwise(links):
         lower, upper = (math.radians(angle) for angle in link.range_deg)
         parts.append(
             f'  <joint name="{link.joint}" type="revolute">\n    <parent link="{before.name}"/>\n'
             f'    <child link="{link.name}"/>\n'
             '    <origin xyz="{:.6g} {:.6g} {:.6g}" rpy="0 0 0"/>\n'.format(*link.origin)
             + '    <axis xyz="{:g} {:g} {:g}"/>\n'.format(*link.axis)
-            + f'    <limit lower="{lower:.8g}" upper="{upper:.8g}" effort="{link.effort:g}" velocity="10"/>\n  </joint>\n'
+            + f'    <limit lower="{lower:.8g}" upper="{upper:.8g}" effort="{link.effort:g}" velocity="10"/>\n'
+            + "  </joint>\n"
         )
         parts.append(link.text())
     parts.append(
