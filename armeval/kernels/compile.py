@@ -18,3 +18,11 @@ def jit(function: Callable[P, R]) -> Callable[P, R]:
     """
     compiled: Callable[P, R] = numba.njit(cache=True, error_model="numpy", nogil=True)(function)
     return compiled
+
+
+def jit_inline(function: Callable[P, R]) -> Callable[P, R]:
+    """Compile a part of a kernel into whatever kernel calls it, so that what is constant there is constant here too."""
+    compiled: Callable[P, R] = numba.njit(error_model="numpy", nogil=True, fastmath={"contract"}, forceinline=True)(
+        function
+    )
+    return compiled

@@ -1,0 +1,119 @@
+"""The replay: how the arm will move along a trajectory, with everything in it that moves the tip."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from armeval.arrays import BoolArray, FloatArray
+from armeval.errors import InputError
+from armeval.evaluate.replay_input import replay_input
+from armeval.kernels.replay import replay_lap
+from armeval.model.arm import Arm
+from armeval.model.causes import Causes
+from armeval.model.trajectory import Trajectory
+from armeval.model.trial import Compensation
+
+_ALL_CAUSES = Causes()
+_IDEAL_TABLE = Compensation()
+
+
+@dataclass(frozen=True, eq=False)
+class Replay:
+    """A replayed lap on the trajectory's time grid, k periods of n joints.
+
+    Attributes
+    ----------
+    time
+        Shape (k,) [s].
+    angle, speed
+        Shape (k, n) [rad or m], [rad/s or m/s]. True joint angles and speeds.
+    torque
+        Shape (k, n) [N m or N]. Joint torque commanded at that instant; it acts after the servo's delay.
+    saturated
+        Shape (k, n). Whether the command was cut at the torque limit.
+    resting
+        Shape (k, n). Whether dry friction held the joint exactly still over the step before.
+    """
+
+    time: FloatArray
+    angle: FloatArray
+    speed: FloatArray
+    torque: FloatArray
+    saturated: BoolArray
+    resting: BoolArray
+
+
+def replay(
+    arm: Arm,
+    trajectory: Trajectory,
+    *,
+    compensated: bool,
+    compensation: Compensation = _IDEAL_TABLE,
+    substeps: int = 1,
+    seed: int = 0,
+    settle: float = 0.5,
+    causes: Causes = _ALL_CAUSES,
+    start: FloatArray | None = None,
+) -> Replay:
+    """Replay one lap of an arm along a trajectory.
+
+    Parameters
+    ----------
+    arm, trajectory
+        The trajectory is one that was planned for this arm.
+    compensated
+        Whether the firmware feeds its compensation table forward.
+    compensation
+        What that table can do. Every joint's table is out of step by just the index error, and its entries carry noise.
+    substeps
+        Time steps in a servo period.
+    seed
+        Of the table's noise.
+    settle
+        Time [s] for which the first target is held before the lap.
+    causes
+        What acts; default: everything.
+    start
+        Shape (n,) [rad or m]. Where the arm rests before settling; default: the first target.
+
+    Raises
+    ------
+    InputError
+        If the trajectory does not fit the arm, or the motion grows beyond all bounds.
+    """
+    prepared = replay_input(
+        arm,
+        trajectory,
+        compensated=compensated,
+        compensation=compensation,
+        causes=causes,
+        substeps=substeps,
+        settle=settle,
+        seeds=(np.random.default_rng(seed),),
+        start=start,
+    )
+    k, n = trajectory.joint.shape
+    angle, speed, torque = np.empty((k, n, 1)), np.empty((k, n, 1)), np.empty((k, n, 1))
+    saturated, resting = np.empty((k, n, 1), np.bool_), np.empty((k, n, 1), np.bool_)
+    lost = replay_lap(
+        prepared.joints,
+        prepared.servo,
+        prepared.targets,
+        prepared.cogging,
+        prepared.table,
+        angle,
+        speed,
+        torque,
+        saturated,
+        resting,
+    )
+    if lost >= 0:
+        raise InputError(
+            f"the motion grows beyond all bounds after {trajectory.time[lost]:.3f} s: the servo loop is not stable",
+            "lower stiffness or damping, shorten the delay, or raise the speed filter's corner",
+        )
+    return Replay(
+        np.array(trajectory.time), angle[..., 0], speed[..., 0], torque[..., 0], saturated[..., 0], resting[..., 0]
+    )
