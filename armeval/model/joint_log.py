@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 
 import numpy as np
 
 from armeval.arrays import FloatArray, frozen
 from armeval.errors import InputError
+
+#: A step of time that is longer than so many median periods is a gap.
+GAP_PERIODS = 10.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -57,3 +61,18 @@ class JointLog:
         if (np.diff(time) <= 0.0).any():
             row = int(np.argmax(np.diff(time) <= 0.0)) + 1
             raise InputError("time does not rise", "remove the row", file=self.source, place=f"sample {row + 1}")
+
+    @property
+    def period(self) -> float:
+        """Median time from one sample to the next [s]."""
+        return float(np.median(np.diff(self.time)))
+
+    @property
+    def segments(self) -> tuple[slice, ...]:
+        """Stretches of samples without a gap, in the order of time; nothing is known of what happened between them.
+
+        A gap is a step of time longer than ``GAP_PERIODS`` median periods: a jittered clock makes none.
+        """
+        steps = np.diff(self.time)
+        starts = [0, *(np.flatnonzero(steps > GAP_PERIODS * np.median(steps)) + 1).tolist(), len(self.time)]
+        return tuple(slice(first, last) for first, last in itertools.pairwise(starts))

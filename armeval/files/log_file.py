@@ -1,0 +1,183 @@
+"""The joint log: a file of encoder samples to one log a lap, repaired where that is safe, and back."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+
+from armeval.arrays import FloatArray
+from armeval.errors import Findings, InputError
+from armeval.files.columns import renamed
+from armeval.files.log_columns import LogColumns, Signal, log_columns
+from armeval.files.log_doubts import doubt_log
+from armeval.files.log_samples import Samples, read_laps
+from armeval.files.reading import Reading
+from armeval.files.rollover import unroll
+from armeval.files.table import Table, open_table
+from armeval.files.table_writer import write_text_table
+from armeval.files.time_repairs import in_order_of_time
+from armeval.model.arm import Arm
+from armeval.model.joint_log import JointLog
+
+
+def read_joint_log(
+    path: str | os.PathLike[str],
+    arm: Arm,
+    *,
+    columns: Mapping[str, str] | None = None,
+    first_lap: int = 1,
+    findings: Findings | None = None,
+) -> tuple[JointLog, ...]:
+    """Read a joint log: ``time [s]``, ``<joint>.angle [count|deg|rad]`` for every joint, and what else was logged.
+
+    Optional are ``<joint>.target``, ``<joint>.torque [N*m]`` at the joint, ``<joint>.current [A]`` of the motor (times
+    ``torque_constant`` and ``gear_ratio``), and ``lap``. Samples that came twice or late are repaired and counted,
+    counters that rolled over are carried on, gaps are told; signals that contradict each other are doubted in warnings.
+
+    Parameters
+    ----------
+    path
+        A delimited text table, plain or gzip, or a Parquet file.
+    arm
+        What it was logged on.
+    columns
+        Foreign header to ``name [unit]``.
+    first_lap
+        Number that the file's first lap gets.
+    findings
+        Gathers the warnings; None: they are Python's own warnings.
+
+    Returns
+    -------
+    tuple of JointLog
+        One a lap, in the order of the file.
+
+    Raises
+    ------
+    InputError
+        With everything that is wrong in the file, by row and column.
+    """
+    with Reading(path, findings) as found:
+        table = open_log(path)
+        signals = log_columns(renamed(table.columns, columns, found), arm, found)
+        laps = read_laps(table, signals, found)
+        logs = []
+        for index, samples in enumerate(laps):
+            place = f"lap {first_lap + index}" if len(laps) > 1 else ""
+            log = _log(samples, signals, table, arm, found, place)
+            logs.append(replace(log, lap=first_lap + index, source=os.fspath(path)))
+            doubt_log(logs[-1], arm, found, place)
+        return tuple(logs)
+
+
+def open_log(path: str | os.PathLike[str]) -> Table:
+    """Open the table of a joint log, whatever kind of file it is in."""
+    return open_table(path)
+
+
+def _log(samples: Samples, signals: LogColumns, table: Table, arm: Arm, found: Findings, place: str) -> JointLog:
+    """Make the log of one lap of its samples."""
+    if len(samples.time) < 2:
+        row = table.places([int(samples.row[0])])[0]
+        raise InputError("the log has one row", "log a whole lap", place=", ".join(filter(None, (place, row))))
+    _unroll_time(samples.time, signals.time, found, place)
+    samples = in_order_of_time(samples, table, found)
+    _unroll_joints(samples, signals, arm, found, place)
+    for values in (samples.time, samples.angle, samples.target, samples.torque):
+        if values is not None:
+            _freeze(values)
+    return JointLog(samples.time, samples.angle, samples.target, samples.torque, arm.resolution)
+
+
+def _freeze(values: FloatArray) -> None:
+    """Forbid writing into the array and what it is a view of, so that nobody needs a copy of it."""
+    if isinstance(values.base, np.ndarray):
+        values.base.setflags(write=False)
+    values.setflags(write=False)
+
+
+def _unroll_time(time: FloatArray, signal: Signal, found: Findings, place: str) -> None:
+    rolled = unroll(time, signal.wraps)
+    if rolled is not None:
+        bits = round(np.log2(rolled[0] / signal.factor))
+        found.warning(f"the clock's {bits}-bit counter rolled over {_times(rolled[1])}: carried on", place=place)
+
+
+def _unroll_joints(samples: Samples, signals: LogColumns, arm: Arm, found: Findings, place: str) -> None:
+    """Carry on the counters of angles and targets where they rolled over."""
+    for j, joint in enumerate(arm.joints):
+        rolled = None
+        if samples.target is not None and signals.target is not None:
+            _unroll_one(samples.target[:, j], signals.target[j], f"{joint} target", found, place)
+        rolled = _unroll_one(samples.angle[:, j], signals.angle[j], f"{joint} angle", found, place)
+        if rolled is not None:
+            samples.angle[:, j] += rolled * _ranges_off(samples, j, rolled, arm)
+
+
+def _unroll_one(values: FloatArray, signal: Signal, name: str, found: Findings, place: str) -> float | None:
+    rolled = unroll(values, signal.wraps)
+    if rolled is None:
+        return None
+    counts = rolled[0] / abs(signal.factor)
+    bits = round(np.log2(counts))
+    counter = f"{bits}-bit counter" if np.isclose(counts, 2.0**bits, rtol=1e-9) else "one-turn reading"
+    found.warning(f"the {counter} of the {name} rolled over {_times(rolled[1])}: carried on", place=place)
+    return rolled[0]
+
+
+def _ranges_off(samples: Samples, j: int, wrap: float, arm: Arm) -> int:
+    """Whole counter ranges by which joint ``j`` is off its target, else off its range: a counter cannot tell."""
+    middle = float(np.median(samples.angle[:, j]))
+    if samples.target is not None:
+        return round((float(np.median(samples.target[:, j])) - middle) / wrap)
+    lower, upper = float(arm.chain.lower[j]), float(arm.chain.upper[j])
+    if np.isfinite([lower, upper]).all():
+        return round((0.5 * (lower + upper) - middle) / wrap) if not lower <= middle <= upper else 0
+    return 0
+
+
+def _times(count: int) -> str:
+    return "once" if count == 1 else f"{count:,} times"
+
+
+def write_joint_log(
+    logs: JointLog | Sequence[JointLog],
+    path: str | os.PathLike[str],
+    joints: Sequence[str],
+    prismatic: Sequence[bool] | None = None,
+) -> None:
+    """Write a joint log in SI so that reading it gives the same numbers.
+
+    Parameters
+    ----------
+    logs
+        One lap, or several of the same signals: then there is a ``lap`` column.
+    path
+        Where to: ``.csv``, ``.csv.gz`` or ``.parquet``.
+    joints, prismatic
+        Names of the joints, and whether they slide (default: none does).
+
+    Raises
+    ------
+    InputError
+        If the joints do not match the log, or the file cannot be written.
+    """
+    laps = (logs,) if isinstance(logs, JointLog) else tuple(logs)
+    slides = [False] * len(joints) if prismatic is None else list(prismatic)
+    if not laps or any(len(joints) != log.angle.shape[1] for log in laps):
+        raise InputError("the joints do not match the log", "name every joint once", file=path)
+    table = {"time [s]": np.concatenate([log.time for log in laps])}
+    for quantity, units in (("angle", ("rad", "m")), ("target", ("rad", "m")), ("torque", ("N*m", "N"))):
+        values = [getattr(log, quantity) for log in laps]
+        if any(each is None for each in values):
+            continue
+        for j, joint in enumerate(joints):
+            name = f"{joint}.{quantity} [{units[bool(slides[j])]}]"
+            table[name] = np.concatenate([each[:, j] for each in values])
+    if len(laps) > 1:
+        table["lap"] = np.concatenate([np.full(len(log.time), float(log.lap)) for log in laps])
+    write_text_table(Path(path), table)
