@@ -37,7 +37,8 @@ def find_logs(folder: Path, patterns: Sequence[str], findings: Findings, *, plac
     files: dict[Path, None] = {}
     for pattern in patterns:
         wanted = folder / pattern
-        named = _matching(wanted) if any(mark in pattern for mark in _WILD) else [wanted]
+        one_file = wanted.is_file() or not any(mark in pattern for mark in _WILD)
+        named = [wanted] if one_file else _matching(wanted)
         if not named:
             findings.error(f"no log matches `{pattern}`", what_is_there(wanted.parent), place=place)
         _doubtful_order(named, findings, place)
