@@ -7,10 +7,17 @@ equations are well conditioned whatever the spacing (H. G. Feichtinger, K. Groec
 numerical methods in non-uniform sampling theory", Numerische Mathematik 69, 1995), and they are Toeplitz, so that they
 are solved in a time that grows with the square of the degree. Evenly spaced angles need no fit: their discrete
 Fourier transform is the polynomial through all of them.
+
+Tried on made-up torques of known orders, 84 and 168, at 1,000 to 30,000 jittered, random or clustered angles: without
+noise the fit is right to 1e-11 of the amplitude, a periodic cubic spline through the samples to 1e-3 at worst, a
+spline through the means of 1,024 cells to 1e-2 (the cells attenuate); with 10 % noise a spline through random angles
+is off by as much as the signal, because close neighbours tilt it, and the fit by the noise that it predicts. Equal
+weights average noise better by a sixth, and let content above the degree into the orders below it.
 """
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import cast
 
@@ -23,6 +30,9 @@ from armeval.kernels.harmonics import ComplexArray, harmonic_sums
 _TURN = 2.0 * np.pi
 _SAME_ANGLE = 1e-6
 """Angles closer than this [rad] are repeats of one another; printed to six digits a turn comes back as exactly."""
+
+_LEAST_REPEATS = 8
+"""With fewer repeats their spread says little: with 8 its own relative error is a quarter."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -90,7 +100,7 @@ def supported_bandwidth(samples: Samples, size: int) -> int:
     """Highest order that the samples and a table of ``size`` entries support."""
     if samples.even and samples.angle.size <= size:
         return samples.angle.size // 2
-    by_gap = int(np.pi / float(samples.gap.max()) * (1.0 + 1e-9))
+    by_gap = math.ceil(np.pi / float(samples.gap.max()) * (1.0 - 1e-9)) - 1
     return min(by_gap, (samples.angle.size - 1) // 2, (size - 1) // 2)
 
 
@@ -111,9 +121,12 @@ def fit(samples: Samples, bandwidth: int) -> ComplexArray:
 
 
 def entry_variance(samples: Samples, bandwidth: int) -> float | None:
-    """Variance of one entry of the map, averaged over the turn, from the spread of repeats; None without repeats."""
+    """Variance of one entry of the map [N^2 m^2], averaged over the turn, from the spread of repeats; None without.
+
+    A coefficient is a sum of the samples with their weights, and an entry holds 2 bandwidth + 1 coefficients.
+    """
     spare = int(samples.readings.sum()) - samples.angle.size
-    if spare == 0:
+    if spare < _LEAST_REPEATS:
         return None
     unknowns = min(2 * bandwidth + 1, samples.angle.size)
     return samples.squares / spare * float(np.sum(samples.weight**2 / samples.readings)) * unknowns

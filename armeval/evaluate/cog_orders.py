@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np
@@ -31,8 +31,8 @@ class ExpectedOrders:
         The native cogging order, the least common multiple of slots and poles; its multiples are expected too. None
         where the make is not known well enough.
     tolerances
-        Orders that, with their multiples, come from parts that are not all alike: one odd tooth meets every pole
-        once a turn, one odd magnet every slot.
+        Orders that, with their multiples, come from parts that are not all alike: in one turn an odd magnet meets
+        every slot, an odd tooth every pole, and only every pair of poles where north and south differ.
     """
 
     fundamental: int | None
@@ -57,8 +57,8 @@ def expected_orders(slots: int | None, poles: int | None) -> ExpectedOrders:
     poles
         Rotor poles, counting north and south; for a hybrid stepper twice its teeth (50 teeth: 100 poles). A motor of
         which only ``poles`` is given is taken for a two-phase stepper: it has a detent every quarter of an electrical
-        period, so twice the poles a turn (200), and the electrical order itself (50) from tolerances. LCM(8, 100) says
-        the same.
+        period, so twice the poles a turn (200), and the electrical order itself (50) from tolerances. With 8 slots
+        LCM(8, 100) says the same.
 
     Returns
     -------
@@ -72,7 +72,7 @@ def expected_orders(slots: int | None, poles: int | None) -> ExpectedOrders:
     "Stepping motors and their microprocessor controls" (from memory).
     """
     if slots is not None and poles is not None:
-        return ExpectedOrders(math.lcm(slots, poles), (slots, poles))
+        return ExpectedOrders(math.lcm(slots, poles), (slots, max(poles // 2, 1)))
     if poles is not None:
         return ExpectedOrders(2 * poles, (max(poles // 2, 1),))
     return ExpectedOrders(None, () if slots is None else (slots,))
@@ -192,6 +192,15 @@ def orders(
         )
         for order in kept[np.argsort(-amplitude[kept], kind="stable")]
     )
+
+
+def significant_part(cog_map: CogMap) -> CogMap:
+    """Give the map without its noise: only the orders that stand out of it. The noise stays told in ``noise``."""
+    padded = np.zeros(cog_map.torque.size // 2 + 1, dtype=np.complex128)
+    padded[: cog_map.bandwidth + 1] = significant_coefficients(cog_map)
+    if 2 * cog_map.bandwidth == cog_map.torque.size:
+        padded[-1] *= 2.0
+    return replace(cog_map, torque=np.fft.irfft(padded * cog_map.torque.size, cog_map.torque.size))
 
 
 def significant_coefficients(cog_map: CogMap) -> ComplexArray:

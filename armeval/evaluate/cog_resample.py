@@ -121,10 +121,12 @@ def resample(
     Raises
     ------
     InputError
-        If there are too few angles, they leave out part of the turn, or a gap hides an order that the data show.
+        If a value is not finite, there are too few angles, they leave out part of the turn, or a gap hides an order
+        that the data show.
     """
     angle = np.asarray(angle, dtype=np.float64)
     torque = np.asarray(torque, dtype=np.float64)
+    _refuse_what_is_no_number(angle, torque, direction, source)
     sides = _by_direction(angle, torque, direction, source)
     findings: list[Finding] = []
     bandwidth = min(supported_bandwidth(samples, size) for _, samples in sides)
@@ -173,6 +175,18 @@ def resample(
         source=source,
     )
     return cog_map, findings
+
+
+def _refuse_what_is_no_number(angle: FloatArray, torque: FloatArray, direction: FloatArray | None, source: str) -> None:
+    """Raise where the columns differ in length or hold something that is not a finite number."""
+    columns = {"angle": angle, "torque": torque} | ({} if direction is None else {"direction": direction})
+    for name, column in columns.items():
+        if np.shape(column) != (angle.size,):
+            what = f"there are {angle.size} angles and the {name} has the shape {np.shape(column)}"
+            raise InputError(what, "give one value of each for every sample", file=source)
+        if not np.isfinite(column).all():
+            row = int(np.flatnonzero(~np.isfinite(column))[0])
+            raise InputError(f"the {name} of sample {row + 1} is not a finite number", "remove or mend it", file=source)
 
 
 def _by_direction(
