@@ -13,9 +13,9 @@ from armeval.errors import Findings, near
 from armeval.files.columns import factor, find, missing, renamed, unused
 from armeval.files.dialect import Column
 from armeval.files.reading import Reading
-from armeval.files.row_faults import note_rows
+from armeval.files.row_faults import note_rows, refuse_huge
 from armeval.files.table import Table, joined, open_table
-from armeval.files.table_writer import write_text_table
+from armeval.files.table_writer import write_table
 from armeval.model.cogmap import CogMap, CogQuantity
 
 
@@ -118,13 +118,19 @@ def read_cog_map(
         numbers = [joined(pieces) for pieces in table.numbers(places)]
         turned = None if direction is None else _checked_direction(numbers[2], table, found)
         found.raise_errors()
-        value = numbers[1] - numbers[1].mean() if quantity == "spin_acceleration" else numbers[1]
+        with np.errstate(over="ignore"):
+            turn, torque = numbers[0] * angle_factor, numbers[1] * torque_factor
+        refuse_huge(turn, header[angle], table, found)
+        refuse_huge(torque, header[measured], table, found)
+        found.raise_errors()
+        if quantity == "spin_acceleration":
+            torque -= torque.mean()
 
         from armeval.evaluate.cog_resample import resample
 
         cog_map, told = resample(
-            numbers[0] * angle_factor,
-            value * torque_factor,
+            turn,
+            torque,
             turned,
             quantity=quantity,
             source=os.fspath(path),
@@ -206,10 +212,10 @@ def write_cog_map(cog_map: CogMap, file: str | os.PathLike[str]) -> None:
     torque = cog_map.torque + cog_map.removed_mean
     ripple = cog_map.friction_ripple
     if ripple is None:
-        write_text_table(file, {"angle [rad]": cog_map.angle, "cog_torque [N*m]": torque})
+        write_table(file, {"angle [rad]": cog_map.angle, "cog_torque [N*m]": torque})
         return
     ones = np.ones(len(torque))
-    write_text_table(
+    write_table(
         file,
         {
             "angle [rad]": np.concatenate([cog_map.angle, cog_map.angle]),

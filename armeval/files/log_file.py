@@ -12,13 +12,14 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError
 from armeval.files.columns import renamed
-from armeval.files.log_columns import LogColumns, Signal, log_columns
+from armeval.files.log_columns import LogColumns, log_columns
 from armeval.files.log_doubts import doubt_log
-from armeval.files.log_samples import Samples, read_laps
-from armeval.files.reading import Reading
-from armeval.files.rollover import unroll
+from armeval.files.log_samples import Samples, parted, read_samples
+from armeval.files.parquet_table import PARQUET_MAGIC, open_parquet
+from armeval.files.reading import Reading, existing_file
+from armeval.files.rollover import carry_on_clock, carry_on_joints
 from armeval.files.table import Table, open_table
-from armeval.files.table_writer import write_text_table
+from armeval.files.table_writer import write_table
 from armeval.files.time_repairs import in_order_of_time
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
@@ -64,7 +65,11 @@ def read_joint_log(
     with Reading(path, findings) as found:
         table = open_log(path)
         signals = log_columns(renamed(table.columns, columns, found), arm, found)
-        laps = read_laps(table, signals, found)
+        samples, lap = read_samples(table, signals, found)
+        laps = [samples]
+        if lap is not None:
+            carry_on_joints(samples, signals, arm, found, "")
+            laps = parted(samples, lap, table, found)
         logs = []
         for index, samples in enumerate(laps):
             place = f"lap {first_lap + index}" if len(laps) > 1 else ""
@@ -75,7 +80,17 @@ def read_joint_log(
 
 
 def open_log(path: str | os.PathLike[str]) -> Table:
-    """Open the table of a joint log, whatever kind of file it is in."""
+    """Open the table of a joint log, whatever kind of file it is in: its first bytes say which.
+
+    Raises
+    ------
+    InputError
+        If it cannot be read, or its header cannot.
+    """
+    with existing_file(path).open("rb") as raw:
+        magic = raw.read(8)
+    if magic.startswith(PARQUET_MAGIC):
+        return open_parquet(path)
     return open_table(path)
 
 
@@ -84,9 +99,9 @@ def _log(samples: Samples, signals: LogColumns, table: Table, arm: Arm, found: F
     if len(samples.time) < 2:
         row = table.places([int(samples.row[0])])[0]
         raise InputError("the log has one row", "log a whole lap", place=", ".join(filter(None, (place, row))))
-    _unroll_time(samples.time, signals.time, found, place)
+    carry_on_clock(samples.time, signals.time, found, place)
     samples = in_order_of_time(samples, table, found)
-    _unroll_joints(samples, signals, arm, found, place)
+    carry_on_joints(samples, signals, arm, found, place)
     for values in (samples.time, samples.angle, samples.target, samples.torque):
         if values is not None:
             _freeze(values)
@@ -98,50 +113,6 @@ def _freeze(values: FloatArray) -> None:
     if isinstance(values.base, np.ndarray):
         values.base.setflags(write=False)
     values.setflags(write=False)
-
-
-def _unroll_time(time: FloatArray, signal: Signal, found: Findings, place: str) -> None:
-    rolled = unroll(time, signal.wraps)
-    if rolled is not None:
-        bits = round(np.log2(rolled[0] / signal.factor))
-        found.warning(f"the clock's {bits}-bit counter rolled over {_times(rolled[1])}: carried on", place=place)
-
-
-def _unroll_joints(samples: Samples, signals: LogColumns, arm: Arm, found: Findings, place: str) -> None:
-    """Carry on the counters of angles and targets where they rolled over."""
-    for j, joint in enumerate(arm.joints):
-        rolled = None
-        if samples.target is not None and signals.target is not None:
-            _unroll_one(samples.target[:, j], signals.target[j], f"{joint} target", found, place)
-        rolled = _unroll_one(samples.angle[:, j], signals.angle[j], f"{joint} angle", found, place)
-        if rolled is not None:
-            samples.angle[:, j] += rolled * _ranges_off(samples, j, rolled, arm)
-
-
-def _unroll_one(values: FloatArray, signal: Signal, name: str, found: Findings, place: str) -> float | None:
-    rolled = unroll(values, signal.wraps)
-    if rolled is None:
-        return None
-    counts = rolled[0] / abs(signal.factor)
-    bits = round(np.log2(counts))
-    counter = f"{bits}-bit counter" if np.isclose(counts, 2.0**bits, rtol=1e-9) else "one-turn reading"
-    found.warning(f"the {counter} of the {name} rolled over {_times(rolled[1])}: carried on", place=place)
-    return rolled[0]
-
-
-def _ranges_off(samples: Samples, j: int, wrap: float, arm: Arm) -> int:
-    """Whole counter ranges by which joint ``j`` is off its target, else off its range: a counter cannot tell."""
-    middle = float(np.median(samples.angle[:, j]))
-    if samples.target is not None:
-        return round((float(np.median(samples.target[:, j])) - middle) / wrap)
-    lower, upper = float(arm.chain.lower[j]), float(arm.chain.upper[j])
-    if np.isfinite([lower, upper]).all():
-        return round((0.5 * (lower + upper) - middle) / wrap) if not lower <= middle <= upper else 0
-    return 0
-
-
-def _times(count: int) -> str:
-    return "once" if count == 1 else f"{count:,} times"
 
 
 def write_joint_log(
@@ -180,4 +151,4 @@ def write_joint_log(
             table[name] = np.concatenate([each[:, j] for each in values])
     if len(laps) > 1:
         table["lap"] = np.concatenate([np.full(len(log.time), float(log.lap)) for log in laps])
-    write_text_table(Path(path), table)
+    write_table(Path(path), table)

@@ -11,8 +11,8 @@ import numpy.typing as npt
 from armeval.arrays import FloatArray
 from armeval.errors import Findings
 from armeval.files.log_columns import LogColumns, Signal
-from armeval.files.row_faults import note_rows
-from armeval.files.table import Pieces, Table
+from armeval.files.row_faults import note_rows, refuse_huge
+from armeval.files.table import Table
 
 
 @dataclass(frozen=True, eq=False)
@@ -43,44 +43,51 @@ class Samples:
         return replace(self, time=self.time[chosen], angle=self.angle[chosen], target=target, torque=torque, row=row)
 
 
-def read_laps(table: Table, columns: LogColumns, found: Findings) -> list[Samples]:
-    """Read a joint log's samples, lap by lap, in the order in which the laps begin.
+def read_samples(table: Table, columns: LogColumns, found: Findings) -> tuple[Samples, FloatArray | None]:
+    """Read a joint log's samples, and the number of each one's lap where it was logged, shape (k,).
 
     The columns are freed one by one while they are copied, so that hardly more memory is used than the samples take.
 
     Raises
     ------
     InputError
-        If a number is missing or not finite, or a lap's number is not whole.
+        If a number is missing, not finite or beyond reason.
     """
     signals = [columns.time, *columns.angle, *(columns.target or ()), *(columns.torque or ())]
     places = [signal.place for signal in (*signals, *(() if columns.lap is None else (columns.lap,)))]
     pieces = dict(zip(places, table.numbers(places), strict=True))
-    lap = None if columns.lap is None else _in_si(pieces, (columns.lap,))[:, 0]
+
+    def in_si(group: Sequence[Signal]) -> FloatArray:
+        values = np.empty((sum(map(len, pieces[group[0].place])), len(group)))
+        for index, signal in enumerate(group):
+            start = 0
+            for piece in pieces.pop(signal.place):
+                with np.errstate(over="ignore"):
+                    np.multiply(piece, signal.factor, out=values[start : start + len(piece), index])
+                start += len(piece)
+            refuse_huge(values[:, index], table.columns[signal.place], table, found)
+        return values
+
+    lap = None if columns.lap is None else in_si((columns.lap,))[:, 0]
     samples = Samples(
-        time=_in_si(pieces, (columns.time,))[:, 0],
-        angle=_in_si(pieces, columns.angle),
-        target=None if columns.target is None else _in_si(pieces, columns.target),
-        torque=None if columns.torque is None else _in_si(pieces, columns.torque),
+        time=in_si((columns.time,))[:, 0],
+        angle=in_si(columns.angle),
+        target=None if columns.target is None else in_si(columns.target),
+        torque=None if columns.torque is None else in_si(columns.torque),
         row=range(0),
     )
-    samples = replace(samples, row=range(len(samples.time)))
-    return [samples] if lap is None else _parted(samples, lap, table, found)
+    found.raise_errors()
+    return replace(samples, row=range(len(samples.time))), lap
 
 
-def _in_si(pieces: dict[int, Pieces], signals: Sequence[Signal]) -> FloatArray:
-    """Move columns out of ``pieces`` into one array of shape (k, signals), scaled."""
-    values = np.empty((sum(map(len, pieces[signals[0].place])), len(signals)))
-    for index, signal in enumerate(signals):
-        start = 0
-        for piece in pieces.pop(signal.place):
-            np.multiply(piece, signal.factor, out=values[start : start + len(piece), index])
-            start += len(piece)
-    return values
+def parted(samples: Samples, lap: FloatArray, table: Table, found: Findings) -> list[Samples]:
+    """Part the samples by the number of their lap, shape (k,), in the order in which the laps begin.
 
-
-def _parted(samples: Samples, lap: FloatArray, table: Table, found: Findings) -> list[Samples]:
-    """Part the samples by the number in the lap column."""
+    Raises
+    ------
+    InputError
+        If the number of a lap is not whole.
+    """
     broken = np.flatnonzero(lap != np.rint(lap))
     mend = "number laps in whole numbers"
     note_rows(

@@ -13,9 +13,9 @@ from armeval.errors import Findings, InputError
 from armeval.files.columns import factor, find, missing, unused
 from armeval.files.dialect import Column
 from armeval.files.reading import Reading
-from armeval.files.row_faults import refuse_time_that_does_not_rise
+from armeval.files.row_faults import refuse_huge, refuse_time_that_does_not_rise
 from armeval.files.table import joined, open_table
-from armeval.files.table_writer import write_text_table
+from armeval.files.table_writer import write_table
 from armeval.model.planned_path import PlannedPath
 
 _AXES = ("x", "y", "z")
@@ -67,14 +67,20 @@ def read_path(
         found.raise_errors()
 
         pieces = table.numbers(places if timed is None else [*places, timed])
-        points = np.stack([joined(column) * by for column, by in zip(pieces, factors, strict=False)], axis=1)
+        with np.errstate(over="ignore"):
+            points = np.stack([joined(column) * by for column, by in zip(pieces, factors, strict=False)], axis=1)
+        for place, values in zip(places, points.T, strict=True):
+            refuse_huge(values, columns[place], table, found)
         time: FloatArray | None = None
         if timed is not None:
-            time = joined(pieces[-1]) * time_factor
+            with np.errstate(over="ignore"):
+                time = joined(pieces[-1]) * time_factor
+            refuse_huge(time, columns[timed], table, found)
+            found.raise_errors()
             stuck = np.flatnonzero(np.diff(time) <= 0.0) + 1
             mend = "put the rows in the order of time"
             refuse_time_that_does_not_rise(time, stuck, range(len(time)), mend, table, found)
-            found.raise_errors()
+        found.raise_errors()
         return PlannedPath(points, space, time, os.fspath(path))
 
 
@@ -129,4 +135,4 @@ def write_path(
             raise InputError(f"{len(joints)} joints for a path of {path.points.shape[1]}", "name every joint once")
         names = [f"{joint}.angle [{'m' if slide else 'rad'}]" for joint, slide in zip(joints, slides, strict=True)]
     table = dict(zip(names, path.points.T, strict=True))
-    write_text_table(file, table if path.time is None else {"time [s]": path.time, **table})
+    write_table(file, table if path.time is None else {"time [s]": path.time, **table})

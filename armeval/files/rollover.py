@@ -7,6 +7,10 @@ from collections.abc import Sequence
 import numpy as np
 
 from armeval.arrays import FloatArray
+from armeval.errors import Findings
+from armeval.files.log_columns import LogColumns, Signal
+from armeval.files.log_samples import Samples
+from armeval.model.arm import Arm
 
 
 def unroll(values: FloatArray, wraps: Sequence[float]) -> tuple[float, int] | None:
@@ -30,7 +34,7 @@ def unroll(values: FloatArray, wraps: Sequence[float]) -> tuple[float, int] | No
     if len(values) < 2 or not wraps:
         return None
     lowest, highest = float(values.min()), float(values.max())
-    if highest - lowest <= 0.5 * wraps[0]:
+    if highest - lowest <= 0.5 * wraps[0]:  # the usual case, told without looking at the steps
         return None
     steps = np.diff(values)
     for wrap in wraps:
@@ -46,3 +50,50 @@ def unroll(values: FloatArray, wraps: Sequence[float]) -> tuple[float, int] | No
                 values[place:] += turn * wrap
             return wrap, len(places)
     return None
+
+
+def carry_on_clock(time: FloatArray, signal: Signal, found: Findings, place: str) -> None:
+    """Carry on a clock, shape (k,) [s], in place where its counter rolled over, and warn of it."""
+    rolled = unroll(time, signal.wraps)
+    if rolled is not None:
+        bits = round(np.log2(rolled[0] / signal.factor))
+        found.warning(f"the clock's {bits}-bit counter rolled over {_times(rolled[1])}: carried on", place=place)
+
+
+def carry_on_joints(samples: Samples, signals: LogColumns, arm: Arm, found: Findings, place: str) -> None:
+    """Carry on the counters of angles and targets in place where they rolled over, and warn of it.
+
+    A counter cannot tell by how many whole ranges it is off: the angle goes to its target, else into its joint's range.
+    """
+    for j, joint in enumerate(arm.joints):
+        if samples.target is not None and signals.target is not None:
+            _unroll_one(samples.target[:, j], signals.target[j], f"{joint} target", found, place)
+        rolled = _unroll_one(samples.angle[:, j], signals.angle[j], f"{joint} angle", found, place)
+        if rolled is not None:
+            samples.angle[:, j] += rolled * _ranges_off(samples, j, rolled, arm)
+
+
+def _unroll_one(values: FloatArray, signal: Signal, name: str, found: Findings, place: str) -> float | None:
+    rolled = unroll(values, signal.wraps)
+    if rolled is None:
+        return None
+    counts = rolled[0] / abs(signal.factor)
+    bits = round(np.log2(counts))
+    counter = f"{bits}-bit counter" if np.isclose(counts, 2.0**bits, rtol=1e-9) else "one-turn reading"
+    found.warning(f"the {counter} of the {name} rolled over {_times(rolled[1])}: carried on", place=place)
+    return rolled[0]
+
+
+def _ranges_off(samples: Samples, j: int, wrap: float, arm: Arm) -> int:
+    """Give the whole counter ranges that bring joint ``j`` to its target, else into its range."""
+    middle = float(np.median(samples.angle[:, j]))
+    if samples.target is not None:
+        return round((float(np.median(samples.target[:, j])) - middle) / wrap)
+    lower, upper = float(arm.chain.lower[j]), float(arm.chain.upper[j])
+    if np.isfinite([lower, upper]).all():
+        return round((0.5 * (lower + upper) - middle) / wrap) if not lower <= middle <= upper else 0
+    return 0
+
+
+def _times(count: int) -> str:
+    return "once" if count == 1 else f"{count:,} times"

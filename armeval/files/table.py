@@ -139,9 +139,10 @@ class TextTable:
 
 def finite_pieces(table: pa.Table, count: int) -> list[Pieces] | None:
     """Columns of an arrow table of float64 without a copy; None if a number among them is missing or not finite."""
+    if any(table.column(index).null_count for index in range(count)):
+        return None
     pieces = [[chunk.to_numpy(zero_copy_only=True) for chunk in table.column(index).chunks] for index in range(count)]
-    sound = all(np.isfinite(chunk).all() for column in pieces for chunk in column)
-    return pieces if sound else None
+    return pieces if all(np.isfinite(piece).all() for column in pieces for piece in column) else None
 
 
 def open_table(path: str | os.PathLike[str]) -> TextTable:

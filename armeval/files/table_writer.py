@@ -1,4 +1,4 @@
-"""Columns of numbers to a delimited text table, at full precision."""
+"""Columns of numbers to a table in a file, at full precision."""
 
 from __future__ import annotations
 
@@ -10,13 +10,14 @@ from armeval.arrays import FloatArray
 from armeval.errors import InputError
 
 
-def write_text_table(file: str | os.PathLike[str], columns: Mapping[str, FloatArray]) -> None:
-    """Write named columns as comma-separated text, every number with all the digits that it takes to read it back.
+def write_table(file: str | os.PathLike[str], columns: Mapping[str, FloatArray]) -> None:
+    """Write named columns so that reading them gives the same numbers.
 
     Parameters
     ----------
     file
-        Where to; packed by gzip where the name ends in ``.gz``. It appears whole or not at all.
+        Where to: Parquet where the name ends in ``.parquet``, else comma-separated text, packed by gzip where the name
+        ends in ``.gz``. It appears whole or not at all.
     columns
         Header cell to numbers, shape (k,) each.
 
@@ -26,19 +27,25 @@ def write_text_table(file: str | os.PathLike[str], columns: Mapping[str, FloatAr
         If the file cannot be written.
     """
     import pyarrow as pa
-    from pyarrow import csv
+    from pyarrow import csv, parquet
 
     path = Path(file)
     part = path.with_name(f".{path.name}.part")
     table = pa.table({name: pa.array(values) for name, values in columns.items()})
     try:
-        with pa.OSFile(str(part), "wb") as raw:
-            if path.suffix == ".gz":
-                with pa.CompressedOutputStream(raw, "gzip") as packed:
-                    csv.write_csv(table, packed, csv.WriteOptions(quoting_style="needed"))
-            else:
-                csv.write_csv(table, raw, csv.WriteOptions(quoting_style="needed"))
-        part.replace(path)
+        try:
+            with part.open("wb") as raw:
+                if path.suffix == ".parquet":
+                    parquet.write_table(table, raw, compression="zstd")
+                elif path.suffix == ".gz":
+                    with pa.CompressedOutputStream(raw, "gzip") as packed:
+                        csv.write_csv(table, packed, csv.WriteOptions(quoting_style="needed"))
+                else:
+                    csv.write_csv(table, raw, csv.WriteOptions(quoting_style="needed"))
+            part.replace(path)
+        finally:
+            part.unlink(missing_ok=True)
     except OSError as fault:
-        part.unlink(missing_ok=True)
-        raise InputError(f"it cannot be written: {fault}", "choose a place that you may write to", file=file) from fault
+        raise InputError(
+            f"it cannot be written: {fault.strerror or fault}", "choose a place that you may write to", file=path
+        ) from fault
