@@ -101,6 +101,9 @@ def tip_jacobian(chain: ChainArrays, rotation: FloatArray, origin: FloatArray, t
 def tip_positions(chain: ChainArrays, q: FloatArray) -> FloatArray:
     """Tip positions of many poses.
 
+    The tip alone is carried from frame to frame, from the last joint to the base: no joint frame is built, so that
+    millions of logged poses cost a few dozen nanoseconds each.
+
     Parameters
     ----------
     chain
@@ -114,11 +117,21 @@ def tip_positions(chain: ChainArrays, q: FloatArray) -> FloatArray:
     """
     k, n = q.shape
     tips = np.empty((k, 3))
-    rotation = np.empty((n, 3, 3))
-    origin = np.empty((n, 3))
+    P = chain.placement
     for j in range(k):
-        joint_frames(chain, q[j], rotation, origin)
-        tip_position(chain, rotation, origin, tips[j])
+        x, y, z = chain.tip[0], chain.tip[1], chain.tip[2]
+        for i in range(n - 1, -1, -1):
+            if chain.prismatic[i]:
+                z += q[j, i]
+            else:
+                cosine, sine = np.cos(q[j, i]), np.sin(q[j, i])
+                x, y = cosine * x - sine * y, sine * x + cosine * y
+            x, y, z = (
+                P[i, 0, 0] * x + P[i, 0, 1] * y + P[i, 0, 2] * z + P[i, 0, 3],
+                P[i, 1, 0] * x + P[i, 1, 1] * y + P[i, 1, 2] * z + P[i, 1, 3],
+                P[i, 2, 0] * x + P[i, 2, 1] * y + P[i, 2, 2] * z + P[i, 2, 3],
+            )
+        tips[j, 0], tips[j, 1], tips[j, 2] = x, y, z
     return tips
 
 
