@@ -16,13 +16,21 @@ from armeval.model.trial import Run, Trial
 from armeval.progress import Progress, silent
 
 
-def read_trial(path: str | os.PathLike[str], *, findings: Findings | None = None, progress: Progress = silent) -> Trial:
+def read_trial(
+    path: str | os.PathLike[str],
+    *,
+    logs: bool = True,
+    findings: Findings | None = None,
+    progress: Progress = silent,
+) -> Trial:
     """Read a trial: ``trial.toml``, and the arm, path and logs that it names.
 
     Parameters
     ----------
     path
         The ``trial.toml``; other files are named relative to it.
+    logs
+        Whether the logs are read; without them every run is predicted only.
     findings
         Gathers warnings too; they stand in ``Trial.findings`` in any case.
     progress
@@ -35,7 +43,7 @@ def read_trial(path: str | os.PathLike[str], *, findings: Findings | None = None
     """
     found = Findings(os.fspath(path))
     try:
-        trial = _load(path, found, progress)
+        trial = _load(path, found, logs, progress)
     except InputError as fault:
         found.take(fault)
     found.raise_errors()
@@ -44,7 +52,7 @@ def read_trial(path: str | os.PathLike[str], *, findings: Findings | None = None
     return trial
 
 
-def _load(path: str | os.PathLike[str], found: Findings, progress: Progress) -> Trial:
+def _load(path: str | os.PathLike[str], found: Findings, with_logs: bool, progress: Progress) -> Trial:
     content = read_toml(path)
     if not check_schema(content, TRIAL_SCHEMA, found):
         found.raise_errors()
@@ -54,7 +62,7 @@ def _load(path: str | os.PathLike[str], found: Findings, progress: Progress) -> 
     named = {key: content[key] for key in ("arm", "path") if isinstance(content.get(key), str)}
     reading = load_arm(folder / named["arm"], found) if "arm" in named else ArmReading()
     planned = _path(folder / named["path"], reading, found) if "path" in named else None
-    runs, logs = _runs(table, folder, reading, found, progress) if table is not None else ((), ())
+    runs, logs = _runs(table, folder, reading, found, with_logs, progress) if table is not None else ((), ())
     if table is None or reading.arm is None or planned is None or found.has_errors:
         raise InputError.of(found.found)
     if planned.time is not None:
@@ -93,9 +101,11 @@ def _path(file: Path, reading: ArmReading, found: Findings) -> PlannedPath | Non
 
 
 def _runs(
-    table: TrialTable, folder: Path, reading: ArmReading, found: Findings, progress: Progress
+    table: TrialTable, folder: Path, reading: ArmReading, found: Findings, with_logs: bool, progress: Progress
 ) -> tuple[tuple[Run, ...], tuple[str, ...]]:
     """Give the runs with their laps, and the log files that were read."""
+    if not with_logs:
+        return tuple(Run(run.name, run.compensated) for run in table.run), ()
     files = [
         find_logs(folder, run.logs, found, place=f"[[run]] {number}, logs")
         for number, run in enumerate(table.run, start=1)

@@ -1,0 +1,75 @@
+"""The command line as a whole: which commands there are, and what becomes of what goes wrong."""
+
+from __future__ import annotations
+
+import os
+import sys
+import traceback
+from typing import Annotated
+
+import typer
+
+from armeval._version import __version__
+from armeval.cli import check, demo, locate, maps, measure, new, predict, report
+from armeval.errors import InputError
+
+app = typer.Typer(
+    name="armeval",
+    help="How far cogging makes the tip of a small arm stray, where it sticks, and what compensation changes.",
+    epilog="Arms touch people: limit torque and speed first, keep the stop within reach. This program certifies nothing.",
+    no_args_is_help=True,
+    add_completion=False,
+    rich_markup_mode=None,
+    pretty_exceptions_enable=False,
+    context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 110},
+)
+
+
+def _version(wanted: bool) -> None:
+    if wanted:
+        typer.echo(f"armeval {__version__}")
+        raise typer.Exit
+
+
+@app.callback()
+def _top(
+    version: Annotated[  # noqa: ARG001  (typer acts on it)
+        bool, typer.Option("--version", callback=_version, is_eager=True, help="Print the version and exit.")
+    ] = False,
+) -> None:
+    pass
+
+
+for name, function in (
+    ("demo", demo.demo),
+    ("new", new.new),
+    ("check", check.check),
+    ("map", maps.maps),
+    ("predict", predict.predict),
+    ("measure", measure.measure),
+    ("locate", locate.locate),
+    ("report", report.report),
+):
+    app.command(name)(function)
+
+
+def run() -> None:
+    """Run the command and exit with its code."""
+    try:
+        app(standalone_mode=True)
+    except InputError as error:
+        from armeval.cli.words import error_text
+
+        typer.echo(error_text(error), err=True)
+        sys.exit(2)
+    except BrokenPipeError:
+        # Whoever read our output has gone; what is left in the buffer has nowhere to go.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        sys.exit(0)
+    except KeyboardInterrupt:
+        typer.echo("stopped; nothing was written", err=True)
+        sys.exit(130)
+    except Exception:
+        typer.echo("armeval failed on its own account, not because of your files. Please report these lines:", err=True)
+        typer.echo(traceback.format_exc(), err=True)
+        sys.exit(1)

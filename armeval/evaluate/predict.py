@@ -1,0 +1,250 @@
+"""How far the tip will stray, bare and compensated, and where it will stick, before anything moves."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING
+
+
+from armeval.errors import InputError
+from armeval.evaluate.cause import Counterfactual, Removable
+from armeval.evaluate.document import JsonValue, as_text, document
+from armeval.evaluate.lap_track import LapTrack
+from armeval.evaluate.plan import plan_trial
+from armeval.evaluate.quasistatic import Quasistatic, quasistatic
+from armeval.evaluate.replay import replay
+from armeval.evaluate.run_errors import RunErrors, run_errors, runs_frame
+from armeval.evaluate.sticking_ratio import StickingRatio, sticking_ratio
+from armeval.evaluate.tracks import track
+from armeval.model.arm import Arm
+from armeval.model.causes import Causes
+from armeval.model.trajectory import Trajectory
+from armeval.model.trial import Run, Trial
+from armeval.progress import Progress, silent
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+
+@dataclass(frozen=True, eq=False)
+class PredictedRun:
+    """What is to be expected of one run.
+
+    Attributes
+    ----------
+    errors
+        Tip error of the replayed lap.
+    slow
+        Tip error and jumps if the path were run very slowly: no inertia, no speed.
+    ratio
+        Sticking ratio of every joint along the path.
+    saturated
+        Share of servo periods in which each joint's torque was cut at its limit, in the chain's order.
+    """
+
+    errors: RunErrors
+    slow: Quasistatic
+    ratio: StickingRatio
+    saturated: tuple[float, ...]
+
+    @property
+    def name(self) -> str:
+        """The run's name."""
+        return self.errors.name
+
+    @property
+    def compensated(self) -> bool:
+        """Whether compensation acts."""
+        return self.errors.compensated
+
+    @property
+    def track(self) -> LapTrack:
+        """The replayed lap."""
+        return self.errors.tracks[0]
+
+    def to_document(self) -> dict[str, JsonValue]:
+        """Give the run's entry in the JSON document."""
+        return {
+            **self.errors.to_document(),
+            "sticking_ratio": self.ratio.to_document(),
+            "quasistatic": self.slow.to_document(),
+            "saturated_share": list(self.saturated),
+        }
+
+
+@dataclass(frozen=True, eq=False)
+class Prediction:
+    """What is to be expected of every run of a trial.
+
+    Attributes
+    ----------
+    trial
+        The trial's title.
+    runs
+        In the trial's order.
+    trajectory
+        The plan that was replayed.
+    substeps
+        Time steps in a servo period.
+    warnings
+        What to bear in mind.
+    counterfactuals
+        By the run's name: its lap replayed with a cause taken out of one joint.
+    """
+
+    trial: str
+    runs: tuple[PredictedRun, ...]
+    trajectory: Trajectory
+    substeps: int = 1
+    warnings: tuple[str, ...] = ()
+    counterfactuals: Mapping[str, Counterfactual] = field(default_factory=dict)
+
+    def run(self, name: str) -> PredictedRun:
+        """Find a run by its name.
+
+        Raises
+        ------
+        InputError
+            If there is none of that name.
+        """
+        for run in self.runs:
+            if run.name == name:
+                return run
+        raise InputError(f"there is no run `{name}`", "runs here: " + ", ".join(f"`{run.name}`" for run in self.runs))
+
+    def to_frame(self) -> pd.DataFrame:
+        """One row a run and kind of error, lengths in metres."""
+        return runs_frame([run.errors for run in self.runs])
+
+    def to_document(self) -> dict[str, JsonValue]:
+        """Give the JSON document."""
+        content = {"substeps": self.substeps, "runs": [run.to_document() for run in self.runs]}
+        return document("predict", self.trial, self.warnings, content)
+
+    def to_json(self) -> str:
+        """Give the JSON document as text."""
+        return as_text(self.to_document())
+
+
+def predict(
+    trial: Trial,
+    *,
+    trajectory: Trajectory | None = None,
+    substeps: int = 1,
+    seed: int = 0,
+    progress: Progress = silent,
+) -> Prediction:
+    """Predict the tip error of every run of a trial and where its joints will stick.
+
+    Parameters
+    ----------
+    trial
+        Its logs are not looked at.
+    trajectory
+        The plan, where it has been made already.
+    substeps
+        Time steps in a servo period.
+    seed
+        Of the noise on the compensation table.
+    progress
+        Told after each run.
+
+    Raises
+    ------
+    InputError
+        If the path cannot be followed, or the servo loop is not stable.
+    """
+    plan = plan_trial(trial) if trajectory is None else trajectory
+    runs = []
+    for done, run in enumerate(trial.runs):
+        progress("predicting", done, len(trial.runs))
+        runs.append(_predict_run(trial, plan, run, substeps, seed))
+    progress("predicting", len(runs), len(runs))
+    return Prediction(
+        trial=trial.title,
+        runs=tuple(runs),
+        trajectory=plan,
+        substeps=substeps,
+        warnings=(*map(str, trial.findings), *_doubts(trial, runs)),
+        counterfactuals={run.name: _counterfactual(trial, plan, run, substeps, seed) for run in trial.runs},
+    )
+
+
+def _predict_run(trial: Trial, plan: Trajectory, run: Run, substeps: int, seed: int) -> PredictedRun:
+    lap, saturated = _replayed(trial, trial.arm, plan, run, substeps, seed, Causes())
+    return PredictedRun(
+        errors=run_errors([lap]),
+        slow=quasistatic(trial.arm, plan, compensated=run.compensated, compensation=trial.compensation, seed=seed),
+        ratio=sticking_ratio(trial.arm, plan, compensated=run.compensated, compensation=trial.compensation, seed=seed),
+        saturated=saturated,
+    )
+
+
+def _replayed(
+    trial: Trial, arm: Arm, plan: Trajectory, run: Run, substeps: int, seed: int, causes: Causes
+) -> tuple[LapTrack, tuple[float, ...]]:
+    moved = replay(
+        arm,
+        plan,
+        compensated=run.compensated,
+        compensation=trial.compensation,
+        substeps=substeps,
+        seed=seed,
+        causes=causes,
+    )
+    lap = track(
+        arm,
+        plan,
+        run=run.name,
+        compensated=run.compensated,
+        source="prediction",
+        lap=1,
+        file=None,
+        time=moved.time,
+        angle=moved.angle,
+        target=plan.joint,
+        arc=plan.arc,
+        speed=moved.speed,
+        torque=moved.torque,
+    )
+    return lap, tuple(float(share) for share in moved.saturated.mean(axis=0))
+
+
+def _counterfactual(trial: Trial, plan: Trajectory, run: Run, substeps: int, seed: int) -> Counterfactual:
+    def lap_without(joint: str, without: Removable) -> LapTrack:
+        arm, causes = trial.arm, Causes()
+        i = arm.chain.index(joint)
+        others = tuple(0.0 if name == joint else 1.0 for name in arm.joints)
+        if without == "cogging":
+            causes = Causes(cogging=others)
+        elif without == "friction":
+            causes = Causes(friction=others)
+        elif without == "torque limit":
+            free = replace(arm.drives[i], torque_limit=math.inf)
+            arm = replace(arm, drives=(*arm.drives[:i], free, *arm.drives[i + 1 :]))
+        else:
+            lower, upper = arm.chain.lower.copy(), arm.chain.upper.copy()
+            lower[i], upper[i] = -math.inf, math.inf
+            arm = replace(arm, chain=replace(arm.chain, lower=lower, upper=upper))
+        return _replayed(trial, arm, plan, run, substeps, seed, causes)[0]
+
+    return lap_without
+
+
+def _doubts(trial: Trial, runs: list[PredictedRun]) -> list[str]:
+    doubts = [
+        f"joint {drive.joint} has no cog map: no cogging is predicted for it"
+        for drive in trial.arm.drives
+        if drive.cog_map is None
+    ]
+    for run in runs:
+        for joint, share in zip(trial.arm.joints, run.saturated, strict=True):
+            if share > 0.0:
+                doubts.append(
+                    f"run {run.name}: the torque of joint {joint} is at its limit for {100.0 * share:.1f} % of the time"
+                )
+    return doubts
+
+

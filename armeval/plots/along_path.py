@@ -1,0 +1,33 @@
+"""Tip error against path length."""
+
+from __future__ import annotations
+
+from matplotlib.axes import Axes
+
+from armeval.evaluate.along_path import ErrorAlongPath
+from armeval.plots.style import Stroke
+
+
+def along_path_plot(error: ErrorAlongPath, ax: Axes, *, stroke: Stroke, label: str, band: bool = True) -> Axes:
+    """Draw the error of one run along the path: a line for all laps, a band from the best lap to the worst.
+
+    Parameters
+    ----------
+    error
+        Error in bins of arc length.
+    ax
+        Where to draw; call again with another run to lay it over.
+    stroke, label
+        How it is drawn and called.
+    band
+        Whether the band over the laps is drawn.
+    """
+    s = 1e3 * error.arc
+    ax.plot(s, 1e3 * error.rms, color=stroke.color, linestyle=stroke.linestyle, linewidth=1.0, label=label)
+    if band and len(error.laps) > 1:
+        ax.fill_between(s, 1e3 * error.low, 1e3 * error.high, color=stroke.color, alpha=0.15, linewidth=0.0)
+    ax.set_xlabel("path length s [mm]")
+    ax.set_ylabel("tracking error [mm]")
+    ax.set_xlim(0.0, float(s[-1]))
+    ax.set_ylim(bottom=0.0)
+    return ax

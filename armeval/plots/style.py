@@ -1,0 +1,86 @@
+"""One look for all figures: type, lines and the few colours, each with a second sign for eyes that see no colour.
+
+The colours are four of the eight that Okabe and Ito published for colour-blind readers ("Color Universal Design",
+2008; values from memory). Before and after also differ in line style, so that a copy in black and white can be read.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from contextlib import contextmanager
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+INK = "#22262a"
+QUIET = "#7a828a"
+GRID = "#e3e6e8"
+TARGET = "#8d959c"
+
+
+@dataclass(frozen=True)
+class Stroke:
+    """How one thing is drawn in every figure."""
+
+    color: str
+    linestyle: str
+    marker: str
+
+
+BEFORE = Stroke("#b34700", "-", "o")
+AFTER = Stroke("#0063a6", "--", "s")
+PREDICTED_BEFORE = Stroke("#b34700", ":", "o")
+PREDICTED_AFTER = Stroke("#0063a6", ":", "s")
+WARN = "#8f5c00"
+
+RC: Mapping[str, Any] = {
+    "font.family": "sans-serif",
+    "font.sans-serif": ["DejaVu Sans"],
+    "font.size": 9.0,
+    "axes.titlesize": 9.0,
+    "axes.labelsize": 9.0,
+    "xtick.labelsize": 8.0,
+    "ytick.labelsize": 8.0,
+    "legend.fontsize": 8.0,
+    "axes.edgecolor": QUIET,
+    "axes.labelcolor": INK,
+    "text.color": INK,
+    "xtick.color": INK,
+    "ytick.color": INK,
+    "axes.linewidth": 0.6,
+    "axes.spines.top": False,
+    "axes.spines.right": False,
+    "axes.grid": True,
+    "axes.axisbelow": True,
+    "grid.color": GRID,
+    "grid.linewidth": 0.6,
+    "lines.linewidth": 1.2,
+    "legend.frameon": False,
+    "figure.dpi": 100.0,
+    "savefig.dpi": 200.0,
+    # Text stays text: it can be searched, read aloud and scaled; the fonts come from the reader's machine.
+    "svg.fonttype": "none",
+    # Equal input must give equal bytes.
+    "svg.hashsalt": "armeval",
+}
+
+
+@contextmanager
+def quiet_style() -> Iterator[None]:
+    """Draw with the look of the report while the context lasts."""
+    import matplotlib as mpl
+
+    with mpl.rc_context(dict(RC)):
+        yield
+
+
+def figure(width: float, height: float) -> Figure:
+    """Give an empty figure [inches] that belongs to no window."""
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+    from matplotlib.figure import Figure
+
+    made = Figure(figsize=(width, height), layout="constrained")
+    FigureCanvasAgg(made)
+    return made
