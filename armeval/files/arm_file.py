@@ -22,6 +22,7 @@ from armeval.model.chain import Chain
 from armeval.model.cogmap import CogMap
 from armeval.model.drive import Drive
 from armeval.model.servo import Servo
+from armeval.units import angle_text, length_text
 
 
 @dataclass
@@ -98,6 +99,7 @@ def _load(path: str | os.PathLike[str], reading: ArmReading, found: Findings) ->
     gravity = None if table is None else _gravity(table, found)
     for joint, drive in drives.items():
         _has_inertia(chain, joint, drive, found)
+        _rests_in_range(chain, joint, drive, found)
     if table is None or servo is None or gravity is None or found.has_errors:
         return
     reading.arm = Arm(table.name, chain, tuple(drives[joint] for joint in chain.joints), servo, gravity)
@@ -242,3 +244,17 @@ def _has_inertia(chain: Chain, joint: str, drive: Drive, found: Findings) -> Non
             "give its link an inertia in the URDF, or the joint a `rotor_inertia`",
             place=f"[joint.{joint}] rotor_inertia",
         )
+
+
+def _rests_in_range(chain: Chain, joint: str, drive: Drive, found: Findings) -> None:
+    """Note a rest angle that the joint cannot take."""
+    i = chain.index(joint)
+    if drive.rest_angle is None or chain.lower[i] <= drive.rest_angle <= chain.upper[i]:
+        return
+    text = length_text if chain.prismatic[i] else angle_text
+    found.error(
+        f"{text(drive.rest_angle)} is outside the joint's range, "
+        f"{text(float(chain.lower[i]))} to {text(float(chain.upper[i]))}",
+        "choose a rest angle within it, or mend <limit> in the URDF",
+        place=f"[joint.{joint}] rest_angle",
+    )
