@@ -158,12 +158,15 @@ def _scan(
     lags = int(np.ceil((latest - earliest) / step - 1e-9))
     step = float((latest - earliest) / lags) if lags else step
     count = max(2, int(np.floor(trajectory.duration / step + 1e-9)) + 1)
-    at = earliest + step * np.arange(count + lags)
+    at = earliest + step * np.arange(count + lags, dtype=np.float64)
     angle = np.column_stack([np.interp(at, log.time, column) for column in log.angle.T])
-    logged, planned = tips(arm, angle), _interpolate(step * np.arange(count), trajectory.time, trajectory.tip)
+    logged, planned = (
+        tips(arm, angle),
+        _interpolate(step * np.arange(count, dtype=np.float64), trajectory.time, trajectory.tip),
+    )
     middle = planned.mean(axis=0)
     logged, planned = logged - middle, planned - middle
-    energy = np.concatenate([[0.0], np.cumsum(np.einsum("ij,ij->i", logged, logged))])
+    energy: FloatArray = np.concatenate([[0.0], np.cumsum(np.einsum("ij,ij->i", logged, logged))])
     total = energy[count:] - energy[:-count] + np.sum(planned**2)
     for axis in range(3):
         total -= 2.0 * correlate(logged[:, axis], planned[:, axis], mode="valid", method="fft")

@@ -121,7 +121,7 @@ def measure(
 
     laps = spread(held, jobs, what="measuring laps", progress=progress)
     runs = [
-        run_errors([lap for (of, _), (lap, _) in zip(jobs, laps, strict=True) if of is run])
+        run_errors([lap for (of, _), (lap, _) in zip(jobs, laps, strict=True) if of is run], plan)
         for run in trial.runs
         if run.laps
     ]

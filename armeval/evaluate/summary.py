@@ -10,12 +10,16 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.errors import InputError
 from armeval.evaluate.document import JsonValue
-from armeval.evaluate.intervals import rms_interval
+from armeval.evaluate.intervals import rms_bootstrap
 
 
 @dataclass(frozen=True)
 class ErrorSummary:
-    """RMS with its 95 % interval, mean, median, 95th percentile, maximum [m] and samples used."""
+    """RMS with its 95 % interval, mean, median, 95th percentile, maximum [m] and samples used.
+
+    ``effective_samples`` is how many independent samples would tell the RMS as surely (see
+    :mod:`armeval.evaluate.intervals`); NaN where it was not asked for.
+    """
 
     rms: float
     rms_low: float
@@ -25,6 +29,7 @@ class ErrorSummary:
     p95: float
     max: float
     samples: int
+    effective_samples: float = float("nan")
 
     def to_document(self) -> dict[str, JsonValue]:
         """Give the entry in the JSON document."""
@@ -37,6 +42,7 @@ class ErrorSummary:
             "p95_m": self.p95,
             "max_m": self.max,
             "samples": self.samples,
+            "effective_samples": self.effective_samples,
         }
 
 
@@ -53,17 +59,22 @@ def summarise(laps: Sequence[FloatArray]) -> ErrorSummary:
     InputError
         If there is no sample.
     """
-    pooled = np.concatenate([np.asarray(lap, dtype=np.float64) for lap in laps]) if laps else np.empty(0)
-    if pooled.size == 0:
+    filled = [np.asarray(lap, dtype=np.float64) for lap in laps if len(lap)]
+    if not filled:
         raise InputError("there is no sample to sum up", "log at least one whole lap")
-    low, high = rms_interval(laps)
+    interval = rms_bootstrap(filled)
+    samples = sum(len(lap) for lap in filled)
+    mean_square = sum(float(lap @ lap) for lap in filled) / samples
+    mean = sum(float(lap.sum()) for lap in filled) / samples
+    median, p95 = np.quantile(np.concatenate(filled), [0.5, 0.95], overwrite_input=True)
     return ErrorSummary(
-        rms=float(np.sqrt(np.mean(pooled**2))),
-        rms_low=low,
-        rms_high=high,
-        mean=float(np.mean(pooled)),
-        median=float(np.median(pooled)),
-        p95=float(np.percentile(pooled, 95.0)),
-        max=float(np.max(pooled)),
-        samples=int(pooled.size),
+        rms=float(np.sqrt(mean_square)),
+        rms_low=interval.low,
+        rms_high=interval.high,
+        mean=mean,
+        median=float(median),
+        p95=float(p95),
+        max=max(float(lap.max()) for lap in filled),
+        samples=samples,
+        effective_samples=interval.effective_samples,
     )
