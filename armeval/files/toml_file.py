@@ -79,7 +79,11 @@ def check_schema(content: dict[str, Any], wanted: str, findings: Findings) -> bo
         findings.error(f"the schema is {given!r}", add, place="schema")
         return True
     if match[1] != kind:
-        findings.error(f"this file is of the kind `{match[1]}`; one of the kind `{kind}` is due", add, place="schema")
+        findings.error(
+            f"this file is of the kind `{match[1]}`; one of the kind `{kind}` is due",
+            f'name a file with `schema = "{wanted}"`',
+            place="schema",
+        )
         return False
     findings.error(f"this version does not know schema `{given}`", f"{add}, or update armeval", place="schema")
     return True

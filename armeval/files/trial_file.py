@@ -4,13 +4,15 @@ from __future__ import annotations
 
 import os
 from pathlib import Path
+from typing import Any
 
 from armeval.errors import Findings, InputError
 from armeval.files.arm_file import ArmReading, load_arm
 from armeval.files.logs import find_logs, read_logs
-from armeval.files.reading import existing_file
+from armeval.files.reading import Reading, existing_file
 from armeval.files.toml_file import check_schema, read_toml, validate
 from armeval.files.trial_table import TRIAL_SCHEMA, TrialTable
+from armeval.model.joint_log import JointLog
 from armeval.model.planned_path import PlannedPath
 from armeval.model.trial import Run, Trial
 from armeval.progress import Progress, silent
@@ -41,28 +43,22 @@ def read_trial(
     InputError
         If anything in any of the files cannot be used; with all faults of all of them.
     """
-    found = Findings(os.fspath(path))
-    try:
-        trial = _load(path, found, logs, progress)
-    except InputError as fault:
-        found.take(fault)
-    found.raise_errors()
-    if findings is not None:
-        findings.extend(found.warnings)
-    return trial
+    with Reading(path, Findings() if findings is None else findings) as found:
+        return _load(path, found, logs, progress)
 
 
 def _load(path: str | os.PathLike[str], found: Findings, with_logs: bool, progress: Progress) -> Trial:
     content = read_toml(path)
     if not check_schema(content, TRIAL_SCHEMA, found):
-        found.raise_errors()
+        raise InputError.of(found.found)
     table = validate(TrialTable, content, found)
     folder = Path(path).parent
-    # Faults in the trial's own file do not hide those in the files that it names.
-    named = {key: content[key] for key in ("arm", "path") if isinstance(content.get(key), str)}
-    reading = load_arm(folder / named["arm"], found) if "arm" in named else ArmReading()
-    planned = _path(folder / named["path"], reading, found) if "path" in named else None
-    runs, logs = _runs(table, folder, reading, found, with_logs, progress) if table is not None else ((), ())
+    # A fault in the trial's own file must not hide those in the files that it names: its plain values tell which.
+    named = {key: folder / content[key] for key in ("arm", "path") if isinstance(content.get(key), str)}
+    reading = load_arm(named["arm"], found) if "arm" in named else ArmReading()
+    planned = _path(named["path"], reading, found) if "path" in named else None
+    files = _logs_of_runs(content, folder, found, with_logs)
+    laps = _laps(files, content.get("columns"), reading, found, progress)
     if table is None or reading.arm is None or planned is None or found.has_errors:
         raise InputError.of(found.found)
     if planned.time is not None:
@@ -74,13 +70,18 @@ def _load(path: str | os.PathLike[str], found: Findings, with_logs: bool, progre
         title=Path(path).absolute().parent.name if table.title is None else table.title,
         arm=reading.arm,
         path=planned,
-        runs=runs,
+        runs=tuple(Run(run.name, run.compensated, own) for run, own in zip(table.run, laps, strict=True)),
         feed=table.feed,
         acceleration=table.acceleration,
         compensation=table.compensation.value(),
         sticking=table.sticking.value(),
         findings=found.warnings,
-        files=(os.fspath(path), *reading.files, os.fspath(folder / table.path), *logs),
+        files=(
+            os.fspath(path),
+            *reading.files,
+            os.fspath(named["path"]),
+            *dict.fromkeys(os.fspath(file) for run in files for file in run),
+        ),
         source=os.fspath(path),
         **corner,
     )
@@ -100,22 +101,36 @@ def _path(file: Path, reading: ArmReading, found: Findings) -> PlannedPath | Non
         return None
 
 
-def _runs(
-    table: TrialTable, folder: Path, reading: ArmReading, found: Findings, with_logs: bool, progress: Progress
-) -> tuple[tuple[Run, ...], tuple[str, ...]]:
-    """Give the runs with their laps, and the log files that were read."""
+def _logs_of_runs(content: dict[str, Any], folder: Path, found: Findings, with_logs: bool) -> list[tuple[Path, ...]]:
+    """List the log files of each run."""
+    runs = content.get("run")
+    wanted = [
+        _texts(run.get("logs")) if isinstance(run, dict) else [] for run in (runs if isinstance(runs, list) else [])
+    ]
     if not with_logs:
-        return tuple(Run(run.name, run.compensated) for run in table.run), ()
+        return [()] * len(wanted)
     files = [
-        find_logs(folder, run.logs, found, place=f"[[run]] {number}, logs")
-        for number, run in enumerate(table.run, start=1)
+        find_logs(folder, patterns, found, place=f"[[run]] {number}, logs")
+        for number, patterns in enumerate(wanted, start=1)
     ]
     everywhere = [file for run in files for file in run]
     for file in sorted({file for file in everywhere if everywhere.count(file) > 1}):
         found.warning(f"`{file}` belongs to more than one run", "let each run have its own logs", place="[[run]] logs")
+    return files
+
+
+def _laps(
+    files: list[tuple[Path, ...]], columns: object, reading: ArmReading, found: Findings, progress: Progress
+) -> list[tuple[JointLog, ...]]:
+    """Read the laps of each run, if it is known which joints to look for."""
     arm = reading.arm or reading.stand_in
     if arm is None:
-        return (), ()
-    laps = read_logs(files, arm, table.columns, found, progress)
-    runs = tuple(Run(run.name, run.compensated, own) for run, own in zip(table.run, laps, strict=True))
-    return runs, tuple(os.fspath(file) for file in dict.fromkeys(everywhere))
+        return []
+    renamed = {key: name for key, name in columns.items() if isinstance(name, str)} if isinstance(columns, dict) else {}
+    return read_logs(files, arm, renamed, found, progress)
+
+
+def _texts(given: object) -> list[str]:
+    """Give a text, or the texts in a list, as a list."""
+    entries = given if isinstance(given, list) else [given]
+    return [entry for entry in entries if isinstance(entry, str)]

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Annotated, Any, Literal
 
-from annotated_types import Ge
+from annotated_types import Ge, Len
 from pydantic import BeforeValidator, Field, StrictBool
 
 from armeval.files.quantities import Acceleration, Angle, Speed, Unit
@@ -64,4 +64,4 @@ class TrialTable(Table):
     columns: dict[str, str] = Field(default={})
     compensation: CompensationTable = CompensationTable()
     sticking: StickingTable = StickingTable()
-    run: list[RunTable]
+    run: Annotated[list[RunTable], Len(1)]

@@ -1,4 +1,4 @@
-"""A small invented arm with everything a trial needs, written into a folder: the ground that the readers' tests alter."""
+"""A small invented arm with everything a trial needs, written into a folder, for the readers' tests to alter."""
 
 from __future__ import annotations
 

@@ -75,7 +75,8 @@ def test_parts_that_do_not_move_are_lumped():
         "</robot>",
         '<link name="lamp"><inertial><mass value="0.1"/>'
         '<inertia ixx="0" ixy="0" ixz="0" iyy="0" iyz="0" izz="0"/></inertial></link>'
-        '<joint name="screw" type="fixed"><parent link="fore"/><child link="lamp"/><origin xyz="0 0.3 0"/></joint></robot>',
+        '<joint name="screw" type="fixed"><parent link="fore"/><child link="lamp"/><origin xyz="0 0.3 0"/></joint>'
+        "</robot>",
     )
     chain = chain_of(further)
     assert chain.mass[1] == pytest.approx(0.3)
