@@ -13,8 +13,9 @@ from armeval.errors import Findings, near
 from armeval.files.columns import factor, find, missing, renamed, unused
 from armeval.files.dialect import Column
 from armeval.files.reading import Reading
-from armeval.files.row_faults import note_rows, refuse_huge
-from armeval.files.table import Table, joined, open_table
+from armeval.files.row_faults import note_rows
+from armeval.files.scaled import Scaled
+from armeval.files.table import Table, open_table
 from armeval.files.table_writer import write_table
 from armeval.model.cogmap import CogMap, CogQuantity
 
@@ -114,14 +115,11 @@ def read_cog_map(
 
         assert angle is not None
         assert measured is not None
-        places = [angle, measured] if direction is None else [angle, measured, direction]
-        numbers = [joined(pieces) for pieces in table.numbers(places)]
-        turned = None if direction is None else _checked_direction(numbers[2], table, found)
-        found.raise_errors()
-        with np.errstate(over="ignore"):
-            turn, torque = numbers[0] * angle_factor, numbers[1] * torque_factor
-        refuse_huge(turn, header[angle], table, found)
-        refuse_huge(torque, header[measured], table, found)
+        groups = [[Scaled(angle, angle_factor)], [Scaled(measured, torque_factor)]]
+        if direction is not None:
+            groups.append([Scaled(direction)])
+        turn, torque, *rest = (column[:, 0] for column in table.read(groups))
+        turned = _checked_direction(rest[0], table, found) if rest else None
         found.raise_errors()
         if quantity == "spin_acceleration":
             torque -= torque.mean()

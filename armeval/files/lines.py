@@ -1,13 +1,12 @@
-"""The lines of a text file, whatever ends them, and the file without those that say nothing about the data."""
+"""The lines of a text file, whatever ends them."""
 
 from __future__ import annotations
 
-import io
 import re
 from collections.abc import Iterator
 from typing import Protocol
 
-_BLOCK = 1 << 20
+_BLOCK = 1 << 22
 _SAYS_NOTHING = re.compile(rb"(?:(?<=[\r\n])|\A)[ \t]*(?:#[^\r\n]*)?(?:\r\n|\r|\n|\Z)")
 
 
@@ -38,31 +37,6 @@ def lines(stream: Stream) -> Iterator[bytes]:
         yield from block.splitlines(keepends=True)
 
 
-class WithoutComments(io.RawIOBase):
-    """The rest of a stream with its blank lines and its comment lines left out.
-
-    Parameters
-    ----------
-    stream
-        Stands at the start of a line.
-    """
-
-    def __init__(self, stream: Stream) -> None:
-        self._blocks = (_SAYS_NOTHING.sub(b"", block) for block in whole_lines(stream))
-        self._block = memoryview(b"")
-
-    def readable(self) -> bool:
-        """Whether it can be read from."""
-        return True
-
-    def readinto(self, buffer: bytearray | memoryview, /) -> int:  # type: ignore[override]
-        """Fill a buffer; give the number of bytes put into it, 0 at the end."""
-        while not self._block:
-            block = next(self._blocks, None)
-            if block is None:
-                return 0
-            self._block = memoryview(block)
-        count = min(len(buffer), len(self._block))
-        buffer[:count] = self._block[:count]
-        self._block = self._block[count:]
-        return count
+def without_comments(block: bytes) -> bytes:
+    """Leave the blank lines and the comment lines out of a block of whole lines."""
+    return _SAYS_NOTHING.sub(b"", block)

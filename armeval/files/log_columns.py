@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from armeval.errors import Findings, near
 from armeval.files.columns import factor, find, missing
 from armeval.files.dialect import Column
+from armeval.files.scaled import Scaled
 from armeval.model.arm import Arm
 
 _COUNTS = ("count", "counts")
@@ -17,21 +18,15 @@ _COUNTER_BITS = (16, 24, 32)
 
 
 @dataclass(frozen=True)
-class Signal:
-    """One column and what turns its numbers into SI.
+class Signal(Scaled):
+    """One column of a log, what turns its numbers into SI, and where its counter may roll over.
 
     Attributes
     ----------
-    place
-        The column's place in the table.
-    factor
-        SI units per unit of the column.
     wraps
         After how much, in SI, its numbers may have rolled over; smallest first.
     """
 
-    place: int
-    factor: float
     wraps: tuple[float, ...] = ()
 
 
@@ -78,7 +73,7 @@ def log_columns(columns: Sequence[Column], arm: Arm, found: Findings) -> LogColu
         angle=tuple(_position(columns, place or 0, arm, j, found) for j, place in enumerate(angles)),
         target=_targets(columns, arm, found),
         torque=_torques(columns, arm, found),
-        lap=None if lap is None else Signal(lap, 1.0),
+        lap=None if lap is None else Signal(lap),
     )
     found.raise_errors()
     return signals

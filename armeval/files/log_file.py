@@ -65,7 +65,7 @@ def read_joint_log(
     with Reading(path, findings) as found:
         table = open_log(path)
         signals = log_columns(renamed(table.columns, columns, found), arm, found)
-        samples, lap = read_samples(table, signals, found)
+        samples, lap = read_samples(table, signals)
         laps = [samples]
         if lap is not None:
             carry_on_joints(samples, signals, arm, found, "")

@@ -10,8 +10,8 @@ import numpy.typing as npt
 
 from armeval.arrays import FloatArray
 from armeval.errors import Findings
-from armeval.files.log_columns import LogColumns, Signal
-from armeval.files.row_faults import note_rows, refuse_huge
+from armeval.files.log_columns import LogColumns
+from armeval.files.row_faults import note_rows
 from armeval.files.table import Table
 
 
@@ -43,41 +43,21 @@ class Samples:
         return replace(self, time=self.time[chosen], angle=self.angle[chosen], target=target, torque=torque, row=row)
 
 
-def read_samples(table: Table, columns: LogColumns, found: Findings) -> tuple[Samples, FloatArray | None]:
+def read_samples(table: Table, columns: LogColumns) -> tuple[Samples, FloatArray | None]:
     """Read a joint log's samples, and the number of each one's lap where it was logged, shape (k,).
-
-    The columns are freed one by one while they are copied, so that hardly more memory is used than the samples take.
 
     Raises
     ------
     InputError
         If a number is missing, not finite or beyond reason.
     """
-    signals = [columns.time, *columns.angle, *(columns.target or ()), *(columns.torque or ())]
-    places = [signal.place for signal in (*signals, *(() if columns.lap is None else (columns.lap,)))]
-    pieces = dict(zip(places, table.numbers(places), strict=True))
-
-    def in_si(group: Sequence[Signal]) -> FloatArray:
-        values = np.empty((sum(map(len, pieces[group[0].place])), len(group)))
-        for index, signal in enumerate(group):
-            start = 0
-            for piece in pieces.pop(signal.place):
-                with np.errstate(over="ignore"):
-                    np.multiply(piece, signal.factor, out=values[start : start + len(piece), index])
-                start += len(piece)
-            refuse_huge(values[:, index], table.columns[signal.place], table, found)
-        return values
-
-    lap = None if columns.lap is None else in_si((columns.lap,))[:, 0]
-    samples = Samples(
-        time=in_si((columns.time,))[:, 0],
-        angle=in_si(columns.angle),
-        target=None if columns.target is None else in_si(columns.target),
-        torque=None if columns.torque is None else in_si(columns.torque),
-        row=range(0),
-    )
-    found.raise_errors()
-    return replace(samples, row=range(len(samples.time))), lap
+    optional = [columns.target, columns.torque, None if columns.lap is None else (columns.lap,)]
+    groups = [(columns.time,), columns.angle, *(group for group in optional if group is not None)]
+    time, angle, *more = table.read(groups)
+    coming = iter(more)
+    target, torque, lap = (None if group is None else next(coming) for group in optional)
+    samples = Samples(time[:, 0], angle, target, torque, range(len(time)))
+    return samples, None if lap is None else lap[:, 0]
 
 
 def parted(samples: Samples, lap: FloatArray, table: Table, found: Findings) -> list[Samples]:

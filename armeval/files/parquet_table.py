@@ -6,15 +6,21 @@ import os
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import numpy as np
 
+from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError
 from armeval.files.dialect import Column
+from armeval.files.growing import GrowingArray
 from armeval.files.reading import existing_file
 from armeval.files.row_faults import note_rows
-from armeval.files.table import Pieces, finite_pieces
+from armeval.files.scaled import LARGEST, Scaled, scaled_rows
 from armeval.units import header
+
+if TYPE_CHECKING:
+    import pyarrow as pa
 
 PARQUET_MAGIC = b"PAR1"
 
@@ -37,41 +43,59 @@ class ParquetTable:
     source: str
     columns: tuple[Column, ...]
 
-    def numbers(self, wanted: Sequence[int]) -> list[Pieces]:
-        """Give the wanted columns; see :meth:`armeval.files.table.Table.numbers`."""
+    def read(self, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray]:
+        """Give groups of columns in SI; see :meth:`armeval.files.table.Table.read`."""
         import pyarrow as pa
         from pyarrow import parquet
 
-        texts = [self.columns[index].text for index in wanted]
-        found = Findings(self.source)
+        texts = [self.columns[column.place].text for group in groups for column in group]
+        arrays = [GrowingArray(len(group)) for group in groups]
+        done = 0
         try:
             with parquet.ParquetFile(self.file) as opened:
-                arrow = opened.schema_arrow
-                for text in texts:
-                    kind = arrow.field(text).type
-                    if not (pa.types.is_integer(kind) or pa.types.is_floating(kind)):
-                        found.error(f"it holds {kind}, not numbers", "store numbers", place=f"column `{text}`")
-                found.raise_errors()
-                table = opened.read(columns=texts).select(texts)
-            table = table.cast(pa.schema([(text, pa.float64()) for text in texts]), safe=False)
+                self._refuse_other_types(opened.schema_arrow, texts)
+                for index in range(opened.num_row_groups):
+                    table = opened.read_row_group(index, columns=texts).select(texts)
+                    table = table.cast(pa.schema([(text, pa.float64()) for text in texts]), safe=False)
+                    columns = [column.to_numpy() for column in table.columns]
+                    rows = scaled_rows(columns, groups)
+                    if rows is None:
+                        raise self._faults(columns, groups, done)
+                    for array, values in zip(arrays, rows, strict=True):
+                        array.append(values)
+                    done += table.num_rows
         except (pa.ArrowException, OSError) as fault:
             raise _damaged(fault) from fault
-        if not table.num_rows:
+        if not done:
             raise InputError("it has columns and no row", "log a whole lap", file=self.source)
-        pieces = finite_pieces(table, len(texts))
-        if pieces is not None:
-            return pieces
+        return [array.finished() for array in arrays]
+
+    def _refuse_other_types(self, schema: pa.Schema, texts: Sequence[str]) -> None:
+        """Raise an error with every column that is read and does not hold numbers."""
+        import pyarrow as pa
+
+        found = Findings(self.source)
         for text in texts:
-            numbers = table.column(text).to_numpy()
+            kind = schema.field(text).type
+            if not (pa.types.is_integer(kind) or pa.types.is_floating(kind)):
+                found.error(f"it holds {kind}, not numbers", "store numbers", place=f"column `{text}`")
+        found.raise_errors()
+
+    def _faults(self, columns: Sequence[FloatArray], groups: Sequence[Sequence[Scaled]], first: int) -> InputError:
+        """Make an error of the rows, counted from ``first``, that hold no number of a size that can be."""
+        found = Findings(self.source)
+        for numbers, column in zip(columns, (column for group in groups for column in group), strict=True):
+            with np.errstate(invalid="ignore", over="ignore"):
+                faulty = ~(np.abs(numbers * column.factor) <= LARGEST)
             note_rows(
-                np.flatnonzero(~np.isfinite(numbers)),
+                np.flatnonzero(faulty) + first,
                 self,
                 found,
-                lambda _: ("there is no finite number", "give a number, or remove the row"),
-                rest="rows without a number",
-                column=text,
+                lambda _: ("there is no finite number of a size that can be", "give a number, or remove the row"),
+                rest="rows of the kind",
+                column=self.columns[column.place].text,
             )
-        raise InputError.of(found.found)
+        return InputError.of(found.found)
 
     def places(self, samples: Sequence[int]) -> list[str]:
         """Say where samples stand, counted from 0: rows of Parquet count from 1."""

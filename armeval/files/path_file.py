@@ -8,13 +8,13 @@ from typing import Literal
 
 import numpy as np
 
-from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError
 from armeval.files.columns import factor, find, missing, unused
 from armeval.files.dialect import Column
 from armeval.files.reading import Reading
-from armeval.files.row_faults import refuse_huge, refuse_time_that_does_not_rise
-from armeval.files.table import joined, open_table
+from armeval.files.row_faults import refuse_time_that_does_not_rise
+from armeval.files.scaled import Scaled
+from armeval.files.table import open_table
 from armeval.files.table_writer import write_table
 from armeval.model.planned_path import PlannedPath
 
@@ -66,21 +66,16 @@ def read_path(
         unused(columns, [*places, *(() if timed is None else (timed,))], found, [*_AXES, *targets, "time"])
         found.raise_errors()
 
-        pieces = table.numbers(places if timed is None else [*places, timed])
-        with np.errstate(over="ignore"):
-            points = np.stack([joined(column) * by for column, by in zip(pieces, factors, strict=False)], axis=1)
-        for place, values in zip(places, points.T, strict=True):
-            refuse_huge(values, columns[place], table, found)
-        time: FloatArray | None = None
+        groups = [[Scaled(*pair) for pair in zip(places, factors, strict=True)]]
         if timed is not None:
-            with np.errstate(over="ignore"):
-                time = joined(pieces[-1]) * time_factor
-            refuse_huge(time, columns[timed], table, found)
-            found.raise_errors()
+            groups.append([Scaled(timed, time_factor)])
+        points, *rest = table.read(groups)
+        time = rest[0][:, 0] if rest else None
+        if time is not None:
             stuck = np.flatnonzero(np.diff(time) <= 0.0) + 1
             mend = "put the rows in the order of time"
             refuse_time_that_does_not_rise(time, stuck, range(len(time)), mend, table, found)
-        found.raise_errors()
+            found.raise_errors()
         return PlannedPath(points, space, time, os.fspath(path))
 
 

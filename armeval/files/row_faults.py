@@ -9,13 +9,10 @@ import numpy.typing as npt
 
 from armeval.arrays import FloatArray
 from armeval.errors import Findings
-from armeval.files.dialect import Column
 from armeval.files.table import Table
 from armeval.units import time_text
 
 _LISTED = 20
-#: No time, angle, torque or length [SI] of an arm is larger; what is, is a fault of the logger or of a unit.
-_LARGEST = 1e12
 
 
 def note_rows(
@@ -83,19 +80,3 @@ def refuse_time_that_does_not_rise(
         return f"time runs back by {time_text(back)}", mend
 
     note_rows([int(rows[int(i)]) for i in later], table, found, tell, rest="rows where time does not rise")
-
-
-def refuse_huge(values: FloatArray, column: Column, table: Table, found: Findings) -> None:
-    """Note an error for every number of a column, shape (k,) in SI, that is beyond anything an arm does."""
-    if not len(values) or max(-float(values.min()), float(values.max())) <= _LARGEST:
-        return
-    huge = np.flatnonzero(np.abs(values) > _LARGEST)
-    mend = "correct the number, or the unit of the column"
-    note_rows(
-        huge,
-        table,
-        found,
-        lambda _: ("the number is beyond anything an arm does", mend),
-        rest="rows with such a number",
-        column=column.text,
-    )

@@ -7,22 +7,17 @@ from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING, Any, Protocol, TypeAlias
-
-import numpy as np
+from typing import Any, Protocol
 
 from armeval.arrays import FloatArray
 from armeval.errors import InputError
+from armeval.files.block_parser import in_parallel, parsed
 from armeval.files.dialect import Column, Dialect, read_dialect
-from armeval.files.lines import WithoutComments, lines
+from armeval.files.growing import GrowingArray
+from armeval.files.lines import lines, whole_lines
 from armeval.files.reading import existing_file
+from armeval.files.scaled import Scaled
 from armeval.files.table_faults import diagnosed
-
-if TYPE_CHECKING:
-    import pyarrow as pa
-
-#: One column as the pieces in which it was read, each of shape (some,).
-Pieces: TypeAlias = list[FloatArray]
 
 _SAMPLE_BYTES = 1 << 18
 _GZIP = b"\x1f\x8b"
@@ -39,13 +34,15 @@ class Table(Protocol):
     def columns(self) -> tuple[Column, ...]:
         """The header's cells, in the order of the file."""
 
-    def numbers(self, wanted: Sequence[int]) -> list[Pieces]:
-        """Give the wanted columns, by their places in ``columns``; only they need to hold numbers.
+    def read(self, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray]:
+        """Give groups of columns in SI, shape (k, columns of the group) each; only they need to hold numbers.
+
+        No column may stand in two places.
 
         Raises
         ------
         InputError
-            With every row that holds something else than finite numbers, and if there are no rows.
+            With every row that holds something else than finite numbers of a size that can be, or without any row.
         """
 
     def places(self, samples: Sequence[int]) -> list[str]:
@@ -75,15 +72,15 @@ class TextTable:
         """The header's cells, in the order of the file."""
         return self.dialect.columns
 
-    def numbers(self, wanted: Sequence[int]) -> list[Pieces]:
-        """Give the wanted columns; see :meth:`Table.numbers`."""
-        pieces = self._fast(wanted)
-        if pieces is None:
+    def read(self, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray]:
+        """Give groups of columns in SI; see :meth:`Table.read`."""
+        values = self._fast(groups)
+        if values is None:
             with _opened(self.file) as stream:
-                pieces = diagnosed(stream, self.dialect, wanted)
-        if not pieces or not sum(map(len, pieces[0])):
+                values = diagnosed(stream, self.dialect, groups)
+        if not len(values[0]):
             raise InputError("there is a header and no row of numbers", "add rows below the header", file=self.source)
-        return pieces
+        return values
 
     def places(self, samples: Sequence[int]) -> list[str]:
         """Say where in the file samples stand, counted from 0; see :meth:`Table.places`."""
@@ -100,49 +97,24 @@ class TextTable:
                             break
         return [f"row {rows[sample]}" for sample in samples]
 
-    def _fast(self, wanted: Sequence[int]) -> list[Pieces] | None:
-        """Give the wanted columns as pyarrow reads them; None if anything in them needs a closer look."""
-        # A comment passes for a row where the column that it begins in is not looked at.
-        passes = (False, True) if 0 in wanted else (True,)
-        for comments in passes:
-            for decimal in (self.dialect.decimal,) if self.dialect.decimal else (".", ","):
-                pieces = self._parsed(wanted, decimal, comments=comments)
-                if pieces is not None:
-                    return pieces
+    def _fast(self, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray] | None:
+        """Give the groups as pyarrow reads them; None if anything in them needs a closer look."""
+        for decimal in (self.dialect.decimal,) if self.dialect.decimal else (".", ","):
+            values = self._parsed(groups, decimal)
+            if values is not None:
+                return values
         return None
 
-    def _parsed(self, wanted: Sequence[int], decimal: str, *, comments: bool) -> list[Pieces] | None:
-        import pyarrow as pa
-        from pyarrow import csv
-
-        names = [str(index) for index in range(len(self.columns))]
-        kept = [names[index] for index in wanted]
-        try:
-            with _opened(self.file) as stream:
-                stream.read(self.dialect.data_offset)
-                source = WithoutComments(stream) if comments else stream
-                table = csv.read_csv(
-                    source,
-                    read_options=csv.ReadOptions(column_names=names),
-                    parse_options=csv.ParseOptions(delimiter=self.dialect.delimiter),
-                    convert_options=csv.ConvertOptions(
-                        column_types=dict.fromkeys(names, pa.float64()),
-                        include_columns=kept,
-                        null_values=[],
-                        decimal_point=decimal,
-                    ),
-                )
-        except pa.ArrowInvalid as fault:
-            return [[] for _ in wanted] if "Empty CSV file" in str(fault) else None
-        return finite_pieces(table, len(kept))
-
-
-def finite_pieces(table: pa.Table, count: int) -> list[Pieces] | None:
-    """Columns of an arrow table of float64 without a copy; None if a number among them is missing or not finite."""
-    if any(table.column(index).null_count for index in range(count)):
-        return None
-    pieces = [[chunk.to_numpy(zero_copy_only=True) for chunk in table.column(index).chunks] for index in range(count)]
-    return pieces if all(np.isfinite(piece).all() for column in pieces for piece in column) else None
+    def _parsed(self, groups: Sequence[Sequence[Scaled]], decimal: str) -> list[FloatArray] | None:
+        arrays = [GrowingArray(len(group)) for group in groups]
+        with _opened(self.file) as stream:
+            stream.read(self.dialect.data_offset)
+            for rows in in_parallel(lambda block: parsed(block, self.dialect, groups, decimal), whole_lines(stream)):
+                if rows is None:
+                    return None
+                for array, values in zip(arrays, rows, strict=True):
+                    array.append(values)
+        return [array.finished() for array in arrays]
 
 
 def open_table(path: str | os.PathLike[str]) -> TextTable:
@@ -164,11 +136,6 @@ def open_table(path: str | os.PathLike[str]) -> TextTable:
         return TextTable(file, os.fspath(path), read_dialect(sample, complete=complete))
     except InputError as fault:
         raise fault.placed(file=path) from fault.__cause__
-
-
-def joined(pieces: Pieces) -> FloatArray:
-    """Give a column as one array; without a copy where it is in one piece."""
-    return pieces[0] if len(pieces) == 1 else np.concatenate(pieces)
 
 
 @contextmanager

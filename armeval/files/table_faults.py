@@ -7,6 +7,7 @@ import math
 from array import array
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from itertools import islice
 
 import numpy as np
 
@@ -14,6 +15,7 @@ from armeval.arrays import FloatArray
 from armeval.errors import Finding, InputError
 from armeval.files.dialect import NUMBER, Dialect, cells_of, decoded, is_comment
 from armeval.files.lines import Stream, lines
+from armeval.files.scaled import LARGEST, Scaled
 
 _LISTED = 20
 _NO_NUMBERS = {"nan", "inf", "infinity", "-nan", "-inf", "-infinity", "+nan", "+inf", "+infinity"}
@@ -50,8 +52,8 @@ class FaultyRows:
         return InputError.of(told)
 
 
-def diagnosed(stream: Stream, dialect: Dialect, wanted: Sequence[int]) -> list[list[FloatArray]]:
-    """Read the wanted columns of a table row by row.
+def diagnosed(stream: Stream, dialect: Dialect, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray]:
+    """Read groups of columns of a table row by row.
 
     Parameters
     ----------
@@ -59,14 +61,21 @@ def diagnosed(stream: Stream, dialect: Dialect, wanted: Sequence[int]) -> list[l
         The file's bytes from its start.
     dialect
         How it is written.
-    wanted
-        Places of the columns in the header.
+    groups
+        The columns that belong together.
+
+    Returns
+    -------
+    list of array
+        Shape (k, columns of the group) in SI for each group.
 
     Raises
     ------
     InputError
-        With every row that has a wrong number of cells, or text, NaN or infinity in a wanted column.
+        With every row that has a wrong number of cells, or text, NaN, infinity or a number beyond reason in a column
+        that is read.
     """
+    wanted = [column for group in groups for column in group]
     columns = [array("d") for _ in wanted]
     faults = FaultyRows()
     offset = 0
@@ -78,11 +87,12 @@ def diagnosed(stream: Stream, dialect: Dialect, wanted: Sequence[int]) -> list[l
         offset += len(raw)
     if faults.listed:
         raise faults.error()
-    return [[np.frombuffer(column, dtype=np.float64)] if column else [] for column in columns]
+    coming = iter(columns)
+    return [np.array(list(islice(coming, len(group)))).T.copy() for group in groups]
 
 
 def _take(
-    line: str, dialect: Dialect, wanted: Sequence[int], columns: list[array[float]], row: int, faults: FaultyRows
+    line: str, dialect: Dialect, wanted: Sequence[Scaled], columns: list[array[float]], row: int, faults: FaultyRows
 ) -> bool:
     """Take the numbers of one row; tell whether the row is sound or its faults are listed."""
     place = f"row {row}"
@@ -95,24 +105,26 @@ def _take(
     if len(cells) != len(dialect.columns):
         return faults.add(*_wrong_count(len(cells), dialect), place)
     told = True
-    for index, column in zip(wanted, columns, strict=True):
-        value = _number(cells[index], dialect)
+    for scaled, column in zip(wanted, columns, strict=True):
+        value = _number(cells[scaled.place], dialect, scaled.factor)
         if isinstance(value, float):
             column.append(value)
         else:
-            told &= faults.add(*value, f"{place}, column `{dialect.columns[index].text}`")
+            told &= faults.add(*value, f"{place}, column `{dialect.columns[scaled.place].text}`")
     return told
 
 
-def _number(cell: str, dialect: Dialect) -> float | tuple[str, str]:
-    """Give the number of a cell, or what is wrong with it and how to mend it."""
+def _number(cell: str, dialect: Dialect, factor: float) -> float | tuple[str, str]:
+    """Give the number of a cell in SI, or what is wrong with it and how to mend it."""
     text = cell
     if dialect.decimal != ".":
         if dialect.decimal == "," and "." in cell and "," not in cell:
             return f"`{cell}` has a decimal point where the other rows have a comma", "write all decimals alike"
         text = cell.replace(",", ".", 1)
     if NUMBER.fullmatch(text) and math.isfinite(value := float(text)):
-        return value
+        if abs(value * factor) <= LARGEST:
+            return value * factor
+        return f"`{cell}` is beyond anything an arm does", "correct the number, or the unit of the column"
     if not cell:
         return "the cell is empty", "give a number, or remove the row"
     if cell.lower() in _NO_NUMBERS or NUMBER.fullmatch(text):

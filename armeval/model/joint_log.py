@@ -12,6 +12,8 @@ from armeval.errors import InputError
 
 #: A step of time that is longer than so many median periods is a gap.
 GAP_PERIODS = 10.0
+#: Of longer logs, the period is the median over about so many steps, evenly picked.
+_STEPS_LOOKED_AT = 100_000
 
 
 @dataclass(frozen=True, eq=False)
@@ -65,7 +67,7 @@ class JointLog:
     @property
     def period(self) -> float:
         """Median time from one sample to the next [s]."""
-        return float(np.median(np.diff(self.time)))
+        return _median_step(np.diff(self.time))
 
     @property
     def segments(self) -> tuple[slice, ...]:
@@ -74,5 +76,10 @@ class JointLog:
         A gap is a step of time longer than ``GAP_PERIODS`` median periods: a jittered clock makes none.
         """
         steps = np.diff(self.time)
-        starts = [0, *(np.flatnonzero(steps > GAP_PERIODS * np.median(steps)) + 1).tolist(), len(self.time)]
+        starts = [0, *(np.flatnonzero(steps > GAP_PERIODS * _median_step(steps)) + 1).tolist(), len(self.time)]
         return tuple(slice(first, last) for first, last in itertools.pairwise(starts))
+
+
+def _median_step(steps: FloatArray) -> float:
+    """Median of the steps of time, shape (k - 1,) [s]; of a long log, of some of them."""
+    return float(np.median(steps[:: max(1, len(steps) // _STEPS_LOOKED_AT)]))
