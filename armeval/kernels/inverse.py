@@ -20,6 +20,7 @@ import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.kernels.chain import ChainArrays, joint_frames, tip_jacobian, tip_position
+from armeval.kernels.cholesky import factor_in_place, solve_in_place
 from armeval.kernels.compile import jit
 
 _SMALL = 1e-12
@@ -86,40 +87,6 @@ def _cost(chain: ChainArrays, target: FloatArray, rest: FloatArray, mu: float, q
 
 
 @jit
-def _factor(A: FloatArray) -> bool:
-    """Cholesky factor in place (lower triangle); False where the matrix is not positive definite."""
-    n = A.shape[0]
-    for j in range(n):
-        pivot = A[j, j]
-        for k in range(j):
-            pivot -= A[j, k] * A[j, k]
-        if not pivot > 0.0:
-            return False
-        root = np.sqrt(pivot)
-        A[j, j] = root
-        for i in range(j + 1, n):
-            entry = A[i, j]
-            for k in range(j):
-                entry -= A[i, k] * A[j, k]
-            A[i, j] = entry / root
-    return True
-
-
-@jit
-def _solve(A: FloatArray, b: FloatArray) -> None:
-    """Solve in place with the factor of :func:`_factor`."""
-    n = A.shape[0]
-    for i in range(n):
-        for k in range(i):
-            b[i] -= A[i, k] * b[k]
-        b[i] /= A[i, i]
-    for i in range(n - 1, -1, -1):
-        for k in range(i + 1, n):
-            b[i] -= A[k, i] * b[k]
-        b[i] /= A[i, i]
-
-
-@jit
 def _matrix(chain: ChainArrays, mu: float, curved: bool, space: _Space) -> None:
     """Second derivative of the cost, with the curvature of tip(q) where ``curved``.
 
@@ -180,11 +147,11 @@ def _descend(
             )
         _matrix(chain, mu, True, space)
         _hold(space.A, space.step, chain, q, downhill)
-        if not _factor(space.A):
+        if not factor_in_place(space.A):
             _matrix(chain, mu, False, space)
             _hold(space.A, space.step, chain, q, downhill)
-            _factor(space.A)
-        _solve(space.A, space.step)
+            factor_in_place(space.A)
+        solve_in_place(space.A, space.step)
         dx, dy, dz = ex, ey, ez
         largest = 0.0
         for i in range(n):
