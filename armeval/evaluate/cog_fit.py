@@ -34,6 +34,9 @@ _SAME_ANGLE = 1e-6
 _LEAST_REPEATS = 8
 """With fewer repeats their spread says little: with 8 its own relative error is a quarter."""
 
+_SHARE_OF_REPEATS = 0.1
+"""Fewer repeats than this share of the angles are chance, or the row for 360 deg, and no repeated measurement."""
+
 
 @dataclass(frozen=True, eq=False)
 class Samples:
@@ -126,7 +129,7 @@ def entry_variance(samples: Samples, bandwidth: int) -> float | None:
     A coefficient is a sum of the samples with their weights, and an entry holds 2 bandwidth + 1 coefficients.
     """
     spare = int(samples.readings.sum()) - samples.angle.size
-    if spare < _LEAST_REPEATS:
+    if spare < max(_LEAST_REPEATS, _SHARE_OF_REPEATS * samples.angle.size):
         return None
     unknowns = min(2 * bandwidth + 1, samples.angle.size)
     return samples.squares / spare * float(np.sum(samples.weight**2 / samples.readings)) * unknowns

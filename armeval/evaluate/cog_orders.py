@@ -219,19 +219,26 @@ def _fine_grid(cog_map: CogMap, coefficients: ComplexArray) -> FloatArray:
 def _crossings(angle: FloatArray, coefficients: ComplexArray, rising: bool) -> FloatArray:
     """Angles [rad] in [0, 2 pi) at which a trigonometric polynomial changes sign, found to rounding error.
 
-    Each change of sign between neighbouring angles is narrowed by Newton's method, kept between them.
+    Each change of sign between neighbouring angles is narrowed by Newton's method, and by halving where that leaves
+    the bracket.
     """
-    value = harmonic_series(angle, coefficients) * (1.0 if rising else -1.0)
+    sign = 1.0 if rising else -1.0
+    value = sign * harmonic_series(angle, coefficients)
     after = np.roll(value, -1)
     start = np.flatnonzero((value < 0.0) & (after >= 0.0))
     step = 2.0 * np.pi / angle.size
-    low = angle[start]
+    low, high = angle[start], angle[start] + step
     root = low + step * value[start] / (value[start] - after[start])
     derivative = 1j * np.arange(coefficients.size) * coefficients
-    for _ in range(4):
-        slope = harmonic_series(root, derivative)
-        ratio = np.divide(harmonic_series(root, coefficients), slope, out=np.zeros_like(root), where=slope != 0.0)
-        root = np.clip(root - ratio, low, low + step)
+    for _ in range(50):
+        there, slope_there = sign * harmonic_series(root, coefficients), sign * harmonic_series(root, derivative)
+        low, high = np.where(there < 0.0, root, low), np.where(there < 0.0, high, root)
+        change = np.divide(-there, slope_there, out=np.full_like(root, np.inf), where=slope_there > 0.0)
+        inside = (root + change >= low) & (root + change <= high)
+        moved = np.where(inside, root + change, 0.5 * (low + high))
+        if np.all(np.abs(moved - root) <= 1e-15):
+            break
+        root = moved
     return np.sort(np.mod(root, 2.0 * np.pi))
 
 

@@ -27,6 +27,9 @@ _LEAST_COVERED = 0.75
 _WORTH_A_REFUSAL = 0.05
 """An order hidden by a gap matters where it has this share of the strongest order's amplitude."""
 
+_ROUNDING = 1e-9
+"""Noise below this share of the torque is rounding."""
+
 
 def _degrees(low: float, high: float) -> str:
     return f"from {angle_text(low, 4)} to {angle_text(math.fmod(high, _TURN), 4)}"
@@ -60,15 +63,14 @@ def _refuse_a_hidden_order(
     if samples.even or highest <= bandwidth:
         return
     left = samples.torque - harmonic_series(samples.angle, coefficients)
-    spectrum = harmonic_sums(samples.angle, np.full(left.size, 1.0 / left.size) * left, highest)
+    spectrum = harmonic_sums(samples.angle, left / left.size, highest)[bandwidth:]  # the fit has emptied those below
     significant, _ = significant_orders(spectrum, noise_power=noise_power)
     amplitude = 2.0 * np.abs(spectrum)
-    strongest = max(float(amplitude[bandwidth + 1 :].max()), float(2.0 * np.abs(coefficients[1:]).max(initial=0.0)))
-    hidden = significant & (amplitude >= _WORTH_A_REFUSAL * strongest)
-    hidden[: bandwidth + 1] = False
+    strongest = max(float(amplitude[1:].max()), 2.0 * float(np.abs(coefficients[1:]).max(initial=0.0)))
+    hidden = np.where(significant & (amplitude >= _WORTH_A_REFUSAL * strongest), amplitude, 0.0)
     if not hidden.any():
         return
-    order = int(np.argmax(np.where(hidden, amplitude, 0.0)))
+    order = bandwidth + int(np.argmax(hidden))
     gap = samples.gap
     after = int(np.argmax(gap))
     raise InputError(
@@ -226,9 +228,10 @@ def _noise(mean: ComplexArray, repeats: list[float | None]) -> tuple[float, Lite
     if len(known) == len(repeats):
         return math.sqrt(sum(known)) / len(known), "repeats"
     significant, floor = significant_orders(mean)
-    if significant[1:].all():
+    noise = math.sqrt(2.0 * (mean.size - 1) * floor)
+    if significant[1:].all() or noise <= _ROUNDING * float(np.sqrt(np.sum(np.abs(mean) ** 2))):
         return 0.0, "none"
-    return math.sqrt(2.0 * (mean.size - 1) * floor), "residual"
+    return noise, "residual"
 
 
 def _direction_lag(up: ComplexArray, down: ComplexArray, mean: ComplexArray, noise: float) -> float:
@@ -286,7 +289,7 @@ def _unsupported(
     gap = angle_text(float(samples.gap.max()))
     what = f"{count} angles a turn with a widest gap of {gap} do not support order {order}"
     alias = abs(order - count * round(order / count))
-    if samples.even and alias <= bandwidth:
+    if samples.even and alias <= bandwidth and alias != order:
         shown = significant_orders(mean)[0][alias] if alias else False
         what += f"; it passes for order {alias}" + (", which stands out here" if shown else "")
     make = f"{slots} slots and {poles} poles" if slots and poles else f"{poles} poles"

@@ -41,8 +41,8 @@ class CogMap:
     bandwidth
         Highest order that the samples support; the map holds none above. 0 stands for all that m entries hold.
     direction_lag
-        Angle [rad] by which each direction's map trails their mean (positive: in its own turning direction); it
-        shrinks order N in the mean by cos(N lag). None where only one direction was measured.
+        Angle [rad] by which each direction's map is shifted in its own turning direction against their mean; it
+        shrinks order N of the mean to cos(N lag) of its size. None where only one direction was measured.
     directions
         How many turning directions were measured, 1 or 2.
     samples
