@@ -38,7 +38,7 @@ WEST_QUAY = [
 
 
 def arc(start: tuple[float, float], end: tuple[float, float], sagitta: float, turn: float) -> FloatArray:
-    """Points strictly between two ends of a circular arc that bulges to the left by ``sagitta``; chords turn by ``turn``."""
+    """Points strictly between the ends of an arc that bulges to the left by ``sagitta``; a chord spans ``turn``."""
     a, b = np.array(start, dtype=float), np.array(end, dtype=float)
     half = np.linalg.norm(b - a) / 2.0
     radius = (half**2 + sagitta**2) / (2.0 * sagitta)

@@ -34,7 +34,8 @@ LAPS, LOG_EVERY, TABLE_BINS = 3, 2, 1024
 RUNS = (("bare", False, 11), ("smoothed", True, 12))
 DEVIATION_WINDOW = 0.025
 
-# Remanence of the usual magnets falls by 0.11 % a kelvin, cogging by twice that; the motors run 25 K warmer than on the bench.
+# Remanence of the usual magnets falls by 0.11 % a kelvin, cogging by twice that; the motors are 25 K warmer than on
+# the bench.
 WARM = 1.0 - 2.0 * 0.0011 * 25.0
 LAP_FRICTION = 0.08
 INDEX_SIGMA = math.radians(0.2)  # of the motor's angle; the trial file says so too, but not the values drawn
@@ -62,7 +63,7 @@ def as_on_the_day(drive: PlantDrive, stored: FloatArray, rng: np.random.Generato
 
 
 def stored_table(file: Path, torque_constant: float) -> FloatArray:
-    """What the firmware stores of a map: both directions' means, linear between the angles, at even bins; motor side."""
+    """What the firmware stores of a map, motor side: mean of both directions, linear between the angles, even bins."""
     with file.open(encoding="utf-8") as lines:
         rows = list(csv.DictReader(lines))
     factor = {

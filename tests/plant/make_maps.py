@@ -24,8 +24,8 @@ def cogging(motor: BenchMotor, angle: FloatArray) -> FloatArray:
 
 
 def table(header: str, formats: tuple[str, ...], *columns: FloatArray) -> str:
-    rows = (",".join(form.format(value) for form, value in zip(formats, row, strict=True)) for row in zip(*columns))
-    return "\n".join([header, *rows]) + "\n"
+    written = [[form.format(value) for value in column] for form, column in zip(formats, columns, strict=True)]
+    return "\n".join([header, *(",".join(row) for row in zip(*written, strict=True))]) + "\n"
 
 
 def there_and_back(degrees: FloatArray) -> tuple[FloatArray, FloatArray]:

@@ -14,7 +14,11 @@ Harmonic = tuple[int, float, float]
 
 @dataclass(frozen=True)
 class BenchMotor:
-    """A motor as it was on the bench: harmonics (order, amplitude [N m], phase [rad]), bearing friction and noise [N m]."""
+    """A motor as it was on the bench.
+
+    Harmonics as (order, amplitude [N m], phase [rad]) of amplitude*sin(order*angle+phase); bearing friction and the
+    noise of one reading [N m]; constants [N m/A], [ohm], [kg m^2] where the map's form needs them.
+    """
 
     harmonics: tuple[Harmonic, ...]
     friction: float

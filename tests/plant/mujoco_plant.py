@@ -312,7 +312,7 @@ class _Firmware:
         self.speed = np.zeros(n)
         # Torques on their way from the loop to the motor, one a plant step; the last one is held.
         self.delay = round(servo.delay / servo.period * plant.substeps)
-        self.queue = deque([np.zeros(n)] * self.delay)
+        self.queue: deque[FloatArray] = deque()
         self.newest = np.zeros(n)
 
     def answer(
@@ -322,6 +322,7 @@ class _Firmware:
         reading = q / self.resolution + self.jitter * self.rng.standard_normal(len(q))
         counts = np.where(self.ideal, reading, np.rint(reading))
         seen = counts * self.resolution
+        first = self.seen is None
         last = seen if self.seen is None else self.seen
         self.speed = self.speed + self.blend * ((seen - last) / self.servo.period - self.speed)
         self.seen = seen
@@ -338,6 +339,8 @@ class _Firmware:
         stepped = np.where(self.quantum > 0.0, self.quantum, 1.0)
         torque = np.where(self.quantum > 0.0, np.rint(torque / stepped) * stepped, torque)
         self.newest = np.sign(torque) * np.maximum(np.abs(torque) - self.dead, 0.0)
+        if first:  # as if it had held the arm there before
+            self.queue.extend([self.newest] * self.delay)
         return counts, torque
 
     def _tip_impedance(self, seen: FloatArray, target: FloatArray, target_speed: FloatArray) -> FloatArray:

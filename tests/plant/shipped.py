@@ -9,8 +9,8 @@ import math
 import tomllib
 from pathlib import Path
 
-from tests.plant.mujoco_plant import Plant, PlantDrive, PlantServo
 from tests.plant.motors import HERON, PLOVER, TERN, BenchMotor
+from tests.plant.mujoco_plant import Plant, PlantDrive, PlantServo
 
 FOLDER = Path(__file__).parents[2] / "robots"
 MOTORS: dict[str, dict[str, BenchMotor]] = {"tern": TERN, "plover": PLOVER, "heron": HERON}
