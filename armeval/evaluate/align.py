@@ -14,8 +14,9 @@ import numpy as np
 from scipy.optimize import minimize_scalar
 from scipy.signal import correlate
 
-from armeval.arrays import BoolArray, FloatArray
+from armeval.arrays import BoolArray, FloatArray, IntArray
 from armeval.errors import Finding, InputError
+from armeval.evaluate.path_progress import path_progress
 from armeval.evaluate.tracks import tips
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
@@ -24,6 +25,7 @@ from armeval.model.trajectory import Trajectory
 _MISSING_PERIODS = 3.0
 _CANDIDATES = 5
 _REFINE_SAMPLES = 20_000
+_UNLIKE = 0.1
 
 
 @dataclass(frozen=True)
@@ -104,41 +106,55 @@ def align_to_plan(log: JointLog, trajectory: Trajectory, arm: Arm) -> Alignment:
                 )
             )
             break
+    extent = float(np.linalg.norm(np.ptp(trajectory.path, axis=0)))
+    if np.sqrt(lowest) > _UNLIKE * extent:
+        findings.append(
+            Finding(
+                "warning",
+                f"at its best the log lies {1e3 * np.sqrt(lowest):.3g} mm (RMS) off a path of {1e3 * extent:.3g} mm",
+                "check sign and index of the encoders, and that the trial's path is the one that was run",
+                log.source,
+                f"lap {log.lap}",
+            )
+        )
     first = int(np.searchsorted(log.time, offset - 1e-9))
     last = int(np.searchsorted(log.time, offset + trajectory.duration + 1e-9, side="right"))
     return Alignment(slice(first, last), offset, tuple(findings))
 
 
-def align_by_targets(log: JointLog, trajectory: Trajectory, arm: Arm) -> Alignment:
-    """Find the lap in a log with targets: from the first motion of the targets along the path to the last.
-
-    Motion to the start of the path and away from its end is left out with a warning.
+def align_by_targets(log: JointLog) -> Alignment:
+    """Take the lap of a log with targets to be from the first motion of the targets to the last.
 
     Raises
     ------
     InputError
-        If the targets stand still, or do not follow the planned path from its start to its end.
+        If the targets stand still.
     """
     assert log.target is not None
-    place = f"lap {log.lap}"
-    moved = np.flatnonzero((log.target[1:] != log.target[:-1]).any(axis=1))
-    if len(moved) == 0:
-        raise InputError("the targets never move", "log a whole lap", file=log.source, place=place)
-    first, last = int(moved[0]), int(moved[-1]) + 2
-    tolerance = path_tolerance(trajectory)
-    begin, end = _on_path(log.target, first, last, trajectory, arm, tolerance)
-    if (begin, end) == (first, last):
-        return Alignment(slice(first, last), 0.0)
+    first, last = _motion(log.target, 0, len(log.time))
+    if last <= first:
+        raise InputError("the targets never move", "log a whole lap", file=log.source, place=f"lap {log.lap}")
+    return Alignment(slice(first, last), 0.0)
+
+
+def align_on_path(log: JointLog, trajectory: Trajectory, arm: Arm) -> Alignment:
+    """Take the lap of a log with targets to be their longest stay on the planned path.
+
+    What :func:`align_by_targets` finds may hold the way to the path's start and from its end; it is left out here, and
+    a warning says so.
+    """
+    assert log.target is not None
+    first, last = _motion(log.target, 0, len(log.time))
+    begin, end = _motion(log.target, *_on_path(log.target, first, last, trajectory, arm))
     left_out = float(log.time[begin] - log.time[first] + log.time[last - 1] - log.time[end - 1])
-    moved = moved[(moved >= begin) & (moved < end - 1)]
     finding = Finding(
         "warning",
         f"{left_out:.4g} s of motion to or from the planned path are left out",
         "nothing, if the arm moved to the start of the path or away from its end",
         log.source,
-        place,
+        f"lap {log.lap}",
     )
-    return Alignment(slice(int(moved[0]), int(moved[-1]) + 2), 0.0, (finding,))
+    return Alignment(slice(begin, end), 0.0, (finding,))
 
 
 def path_tolerance(trajectory: Trajectory) -> float:
@@ -148,6 +164,32 @@ def path_tolerance(trajectory: Trajectory) -> float:
     """
     extent = float(np.linalg.norm(np.ptp(trajectory.path, axis=0)))
     return max(5e-4, 5e-3 * extent)
+
+
+def _motion(target: FloatArray, first: int, last: int) -> tuple[int, int]:
+    """From the sample before the first change of a target to the one after the last, looked for from both ends."""
+
+    def changes(begin: int, end: int) -> IntArray:
+        return np.flatnonzero((target[begin + 1 : end] != target[begin : end - 1]).any(axis=1))
+
+    begin, end, size = first, last, 1024
+    while begin < last - 1:
+        found = changes(begin, min(begin + size, last))
+        if len(found):
+            begin += int(found[0])
+            break
+        begin = min(begin + size, last) - 1
+        size *= 2
+    else:
+        return last, last
+    size = 1024
+    while end > begin + 1:
+        found = changes(max(end - size, begin), end)
+        if len(found):
+            return begin, max(end - size, begin) + int(found[-1]) + 2
+        end = max(end - size, begin) + 1
+        size *= 2
+    return begin, end
 
 
 def _scan(
@@ -192,24 +234,17 @@ def _interpolate(at: FloatArray, time: FloatArray, values: FloatArray) -> FloatA
     return np.column_stack([np.interp(at, time, column) for column in values.T])
 
 
-def _on_path(
-    target: FloatArray, first: int, last: int, trajectory: Trajectory, arm: Arm, tolerance: float
-) -> tuple[int, int]:
+def _on_path(target: FloatArray, first: int, last: int, trajectory: Trajectory, arm: Arm) -> tuple[int, int]:
     """Longest row of samples between first and last whose target lies on the path, judged on some thousand of them."""
-    from armeval.kernels.polyline import nearest_near
+    tolerance = path_tolerance(trajectory)
 
-    def distance(samples: slice) -> FloatArray:
-        tip = tips(arm, target[samples])
-        near, _ = nearest_near(tip, np.zeros(len(tip)), np.full(len(tip), np.inf), trajectory.path, trajectory.path_arc)
-        return near
-
-    def distance_to(point: FloatArray, samples: slice) -> FloatArray:
+    def to_point(point: FloatArray, samples: slice) -> FloatArray:
         return np.asarray(np.linalg.norm(tips(arm, target[samples]) - point, axis=1))
 
     stride = max(1, (last - first) // 4000)
-    on = np.concatenate([[False], distance(slice(first, last, stride)) <= tolerance, [False]])
-    if on[1:-1].all():
-        return first, last
+    tip = tips(arm, target[first:last:stride])
+    distance, _ = path_progress(tip, np.zeros(len(tip)), trajectory, window=np.inf)
+    on = np.concatenate([[False], distance <= tolerance, [False]])
     edges = np.flatnonzero(on[1:] != on[:-1])
     if len(edges) == 0:
         return first, last
@@ -217,12 +252,12 @@ def _on_path(
     longest = int(np.argmax(ends - starts))
     begin, end = first + int(starts[longest]) * stride, first + (int(ends[longest]) - 1) * stride + 1
     # Within the tolerance of its ends the path proper begins where the target is first nearest to them.
-    for_start = distance_to(trajectory.path[0], slice(begin, end, stride)) <= tolerance
-    for_end = distance_to(trajectory.path[-1], slice(end - 1, begin - 1 if begin else None, -stride)) <= tolerance
+    for_start = to_point(trajectory.path[0], slice(begin, end, stride)) <= tolerance
+    for_end = to_point(trajectory.path[-1], slice(end - 1, begin - 1 if begin else None, -stride)) <= tolerance
     head = min(end, begin + (_leading(for_start) + 1) * stride)
     tail = max(begin, end - (_leading(for_end) + 1) * stride)
-    nearest_start = int(np.argmin(distance_to(trajectory.path[0], slice(begin, head))))
-    nearest_end = int(np.argmin(distance_to(trajectory.path[-1], slice(tail, end))[::-1]))
+    nearest_start = int(np.argmin(to_point(trajectory.path[0], slice(begin, head))))
+    nearest_end = int(np.argmin(to_point(trajectory.path[-1], slice(tail, end))[::-1]))
     return begin + nearest_start, end - nearest_end
 
 

@@ -2,21 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Literal
 
-import numpy as np
-
 from armeval.errors import Finding, InputError
-from armeval.evaluate.align import align_by_targets, align_to_plan, path_tolerance
 from armeval.evaluate.document import JsonValue, as_text, document
+from armeval.evaluate.intervals import METHOD
 from armeval.evaluate.lap_track import LapTrack
+from armeval.evaluate.log_track import log_track
 from armeval.evaluate.plan import plan_trial
+from armeval.evaluate.rigid import RigidAlignment, without_rigid_offset
 from armeval.evaluate.run_errors import RunErrors, run_errors, runs_frame
 from armeval.evaluate.threads import spread
-from armeval.evaluate.tracks import track
-from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Run, Trial
@@ -25,6 +22,10 @@ from armeval.progress import Progress, silent
 if TYPE_CHECKING:
     import pandas as pd
 
+BLIND_LAG = (
+    "logs without targets are shifted in time to where the RMS is least, which takes a constant lag out of the "
+    "tracking error; runs"
+)
 BLIND_SPOT = (
     "the tip comes from encoder angles through the arm's kinematics: link flex and wrong link lengths do not show"
 )
@@ -44,17 +45,22 @@ class Measurement:
         The plan they were held against.
     findings
         Warnings met while reading and aligning.
+    rigid
+        The errors without one rigid offset of the base, where that was asked for.
     """
 
     trial: str
     runs: tuple[RunErrors, ...]
     trajectory: Trajectory
     findings: tuple[Finding, ...] = ()
+    rigid: RigidAlignment | None = None
 
     @property
     def warnings(self) -> tuple[str, ...]:
         """What to bear in mind, the blind spot of every such measurement first."""
-        return (BLIND_SPOT, *(str(finding) for finding in self.findings))
+        shifted = [run.name for run in self.runs if not all(track.targets_logged for track in run.tracks)]
+        told = [f"{BLIND_LAG}: {', '.join(shifted)}"] if shifted else []
+        return (BLIND_SPOT, *told, *(str(finding) for finding in self.findings))
 
     def run(self, name: str) -> RunErrors:
         """Find a run by its name.
@@ -76,7 +82,10 @@ class Measurement:
 
     def to_document(self) -> dict[str, JsonValue]:
         """Give the JSON document."""
-        return document("measure", self.trial, self.warnings, {"runs": [run.to_document() for run in self.runs]})
+        content: dict[str, JsonValue] = {"interval": METHOD, "runs": [run.to_document() for run in self.runs]}
+        if self.rigid is not None:
+            content["rigid"] = self.rigid.to_document()
+        return document("measure", self.trial, self.warnings, content)
 
     def to_json(self) -> str:
         """Give the JSON text."""
@@ -117,7 +126,7 @@ def measure(
     jobs = [(run, log) for run in trial.runs for log in run.laps]
 
     def held(job: tuple[Run, JointLog]) -> tuple[LapTrack, tuple[Finding, ...]]:
-        return lap_track(trial.arm, plan, *job)
+        return log_track(trial.arm, plan, *job)
 
     laps = spread(held, jobs, what="measuring laps", progress=progress)
     runs = [
@@ -126,86 +135,7 @@ def measure(
         if run.laps
     ]
     findings = (*trial.findings, *(finding for _, found in laps for finding in found))
-    return Measurement(trial=trial.title, runs=tuple(runs), trajectory=plan, findings=findings)
-
-
-def lap_track(arm: Arm, trajectory: Trajectory, run: Run, log: JointLog) -> tuple[LapTrack, tuple[Finding, ...]]:
-    """Hold one log against the plan, with what is doubtful about it.
-
-    Raises
-    ------
-    InputError
-        If the log is shorter than the trajectory or its targets do not follow the path.
-    """
-    logged = log.target is not None
-    alignment = align_by_targets(log, trajectory, arm) if logged else align_to_plan(log, trajectory, arm)
-    part = alignment.part
-    time = log.time[part]
-    if log.target is not None:
-        target, arc = log.target[part], None
-    else:
-        planned = time - alignment.time_offset
-        target = np.column_stack([np.interp(planned, trajectory.time, column) for column in trajectory.joint.T])
-        arc = np.interp(planned, trajectory.time, trajectory.arc)
-    known = log.resolution if log.resolution is not None else np.zeros(len(arm.joints))
-    found = track(
-        arm,
-        trajectory,
-        run=run.name,
-        compensated=run.compensated,
-        source="log",
-        lap=log.lap,
-        file=log.source or None,
-        time=time,
-        angle=log.angle[part],
-        target=target,
-        arc=arc,
-        torque=None if log.torque is None else log.torque[part],
-        resolution=np.where(known > 0.0, known, arm.resolution),
-        time_offset=alignment.time_offset,
-        targets_logged=logged,
-    )
-    findings = list(alignment.findings)
-    if logged:
-        findings.extend(_targets_on_path(found, trajectory))
-    return found, tuple(findings)
-
-
-def _targets_on_path(lap: LapTrack, trajectory: Trajectory) -> Sequence[Finding]:
-    """Check that logged targets follow the planned path from its start to its end."""
-    tolerance = path_tolerance(trajectory)
-    square = np.zeros(len(lap.arc))
-    for axis in range(3):
-        on_path = np.interp(lap.arc, trajectory.path_arc, trajectory.path[:, axis])
-        square += (lap.target_tip[:, axis] - on_path) ** 2
-    place = f"lap {lap.lap}"
-    farthest = float(np.sqrt(square.max()))
-    if np.sqrt(np.median(square)) > 10.0 * tolerance or farthest > 100.0 * tolerance:
-        at = float(lap.time[int(np.argmax(square))])
-        raise InputError(
-            f"the logged targets do not follow the planned path: they stray up to {1e3 * farthest:.4g} mm from it, "
-            f"the farthest at {at:.6g} s",
-            "check the trial's path, the unit and order of the target columns; several laps in one file need a `lap` column",
-            file=lap.file or "",
-            place=place,
-        )
-    short = trajectory.length - float(lap.arc[-1])
-    if lap.arc[0] > 2.0 * tolerance or short > 2.0 * tolerance:
-        raise InputError(
-            f"the logged targets run from {lap.arc[0]:.4g} m to {lap.arc[-1]:.4g} m of a path of "
-            f"{trajectory.length:.4g} m",
-            "log the whole lap",
-            file=lap.file or "",
-            place=place,
-        )
-    if farthest > tolerance:
-        return [
-            Finding(
-                "warning",
-                f"the logged targets lie up to {1e3 * farthest:.3g} mm off the planned path",
-                "check that the trial's path is the one that was run",
-                lap.file or "",
-                place,
-            )
-        ]
-    return []
+    rigid = without_rigid_offset(runs, plan) if align == "rigid" else None
+    if rigid is not None:
+        findings = (*findings, *rigid.findings)
+    return Measurement(trial=trial.title, runs=tuple(runs), trajectory=plan, findings=findings, rigid=rigid)
