@@ -30,12 +30,12 @@ _LEAST_CELLS = 4096
 
 @dataclass(frozen=True)
 class Jump:
-    """A sudden motion of one joint while the target hardly moves.
+    """A sudden motion while the target hardly moves.
 
     Attributes
     ----------
     joint
-        The joint's name.
+        The joint that jumps; under ``tip_impedance`` all joints move together, and this one moves most.
     time, arc
         When [s] and where along the path [m] the trajectory's target is then.
     joint_angle
@@ -43,7 +43,7 @@ class Jump:
     size
         Of the jump [rad or m], with its sign.
     release
-        Distance that it moves the tip [m].
+        Distance that the tip moves with it [m].
     """
 
     joint: str
@@ -174,18 +174,18 @@ def quasistatic(
         tip=tip,
         target_tip=trajectory.tip,
         deviation=path_progress(tip, trajectory.arc, trajectory)[0],
-        jumps=_jumps(arm, trajectory, angle, moved),
+        jumps=_jumps(arm, trajectory, moved),
     )
 
 
 @dataclass(frozen=True)
 class _Moved:
-    """One jump as the kernels give it: joint's place, sample after it, angles before and after."""
+    """One jump as the kernels give it: joint's place, sample after it, poses (n,) before and after."""
 
     joint: int
     sample: int
-    before: float
-    after: float
+    before: FloatArray
+    after: FloatArray
 
 
 def _weight(arm: Arm, trajectory: Trajectory) -> FloatArray:
@@ -206,7 +206,8 @@ def _step(table: FloatArray, gear: float) -> float:
 def _follow_joints(
     arm: Arm, trajectory: Trajectory, tables: tuple[FloatArray, ...], load: FloatArray
 ) -> tuple[FloatArray, list[_Moved]]:
-    angle, moved = np.empty(trajectory.joint.shape), []
+    angle = np.empty(trajectory.joint.shape)
+    found: list[tuple[int, int, float, float]] = []
     for i, (drive, table) in enumerate(zip(arm.drives, tables, strict=True)):
         if drive.stiffness == 0.0:
             raise InputError("the joint has no stiffness", "give it one", place=f"[joint.{drive.joint}] stiffness")
@@ -228,7 +229,12 @@ def _follow_joints(
         angle[:, i], samples, jumps = follow_target(
             joint, target, np.ascontiguousarray(load[:, i]), float(target[0]), step, least
         )
-        moved += [_Moved(i, int(s), float(a), float(b)) for s, (a, b) in zip(samples, jumps, strict=True)]
+        found += [(i, int(s), float(a), float(b)) for s, (a, b) in zip(samples, jumps, strict=True)]
+    moved = []
+    for i, s, a, b in sorted(found, key=lambda jump: jump[1]):
+        before, after = angle[s].copy(), angle[s].copy()
+        before[i], after[i] = a, b
+        moved.append(_Moved(i, s, before, after))
     return angle, moved
 
 
@@ -252,26 +258,25 @@ def _follow_tip(
     moved = []
     for s in np.flatnonzero(fell):
         before = angle[s - 1] if s > 0 else trajectory.joint[0]
-        for i in np.flatnonzero(np.abs(angle[s] - before) > step):
-            moved.append(_Moved(int(i), int(s), float(before[i]), float(angle[s, i])))
+        joint = int(np.argmax(np.abs(angle[s] - before) / step))
+        if abs(angle[s, joint] - before[joint]) > step[joint]:
+            moved.append(_Moved(joint, int(s), before, angle[s]))
     return angle, moved
 
 
-def _jumps(arm: Arm, trajectory: Trajectory, angle: FloatArray, moved: list[_Moved]) -> tuple[Jump, ...]:
-    moved = sorted(moved, key=lambda one: (one.sample, one.joint))
-    before = np.ascontiguousarray(angle[[one.sample for one in moved]]).reshape(len(moved), arm.chain.count)
-    after = before.copy()
-    for row, one in enumerate(moved):
-        before[row, one.joint], after[row, one.joint] = one.before, one.after
+def _jumps(arm: Arm, trajectory: Trajectory, moved: list[_Moved]) -> tuple[Jump, ...]:
+    if not moved:
+        return ()
     chain = arm.chain.arrays
+    before, after = np.stack([one.before for one in moved]), np.stack([one.after for one in moved])
     release = np.linalg.norm(tip_positions(chain, after) - tip_positions(chain, before), axis=1)
     return tuple(
         Jump(
             joint=arm.joints[one.joint],
             time=float(trajectory.time[one.sample]),
             arc=float(trajectory.arc[one.sample]),
-            joint_angle=one.before,
-            size=one.after - one.before,
+            joint_angle=float(one.before[one.joint]),
+            size=float(one.after[one.joint] - one.before[one.joint]),
             release=float(distance),
         )
         for one, distance in zip(moved, release, strict=True)
