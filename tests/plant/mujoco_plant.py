@@ -38,7 +38,7 @@ class PlantDrive:
     harmonics
         True cogging torque on the rotor: (order, amplitude [N m], phase [rad]) of amplitude*sin(order*angle+phase).
     stiffness, damping
-        Gains of ``joint_pd``; under ``tip_impedance`` they hold the posture, beside the stiffness at the tip.
+        Gains of ``joint_pd``; ``tip_impedance`` does not use them.
     encoder_jitter
         One sigma of a reading [counts] before it is rounded to a whole count.
     encoder_counts
@@ -326,9 +326,10 @@ class _Firmware:
         last = seen if self.seen is None else self.seen
         self.speed = self.speed + self.blend * ((seen - last) / self.servo.period - self.speed)
         self.seen = seen
-        torque = self.stiffness * (target - seen) + self.damping * (target_speed - self.speed)
-        if self.servo.law == "tip_impedance":
-            torque = torque + self._tip_impedance(seen, target, target_speed)
+        if self.servo.law == "joint_pd":
+            torque = self.stiffness * (target - seen) + self.damping * (target_speed - self.speed)
+        else:
+            torque = self._tip_impedance(seen, target, target_speed)
         if self.servo.gravity_feedforward:
             torque = torque + self.plant.gravity_torque(seen)
         if self.servo.inertia_feedforward:
