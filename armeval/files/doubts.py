@@ -19,10 +19,6 @@ def doubt_arm(arm: Arm, findings: Findings) -> None:
     """Note as warnings what an arm lacks for a prediction to be worth believing."""
     for drive, slides in zip(arm.drives, arm.chain.prismatic, strict=True):
         _doubt_drive(drive, arm.servo, bool(slides), findings)
-        if (drive.slots is None) != (drive.poles is None):
-            findings.warning(
-                "only one of `slots` and `poles` is given", "give both, or none", place=f"[joint.{drive.joint}]"
-            )
 
 
 def _doubt_drive(drive: Drive, servo: Servo, slides: bool, findings: Findings) -> None:
@@ -43,6 +39,8 @@ def _doubt_drive(drive: Drive, servo: Servo, slides: bool, findings: Findings) -
     if math.isinf(drive.torque_limit):
         mend = f'add such as `torque_limit = "0.3 {torque}"`'
         warn("torque_limit", "no torque limit: the drive will seem stronger than it is", mend)
+    if (drive.slots is None) != (drive.poles is None):
+        warn("slots", "only one of `slots` and `poles` is given", "give both, or none")
     if drive.encoder_counts == 0.0:
         warn("encoder_counts", "no encoder counts: the encoder will seem perfect", "add `encoder_counts`")
 
