@@ -35,10 +35,15 @@ def frozen(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> F
     if array.ndim != len(shape) or any(w is not None and w != g for w, g in zip(shape, array.shape, strict=True)):
         wanted = " x ".join("any" if w is None else str(w) for w in shape)
         raise InputError(f"{name} has shape {array.shape}", f"give it the shape {wanted}")
-    if not np.isfinite(array).all():
+    if not _is_finite(array):
         raise InputError(f"{name} holds values that are not finite numbers", "remove NaN and infinite values")
     array.setflags(write=False)
     return array
+
+
+def _is_finite(array: FloatArray) -> bool:
+    """Whether all numbers are finite; the extremes tell, without an array of answers. NaN is its own extreme."""
+    return array.size == 0 or bool(np.isfinite(array.min()) and np.isfinite(array.max()))
 
 
 def _is_frozen(values: npt.ArrayLike) -> TypeGuard[FloatArray]:

@@ -34,7 +34,7 @@ def unroll(values: FloatArray, wraps: Sequence[float]) -> tuple[float, int] | No
     if len(values) < 2 or not wraps:
         return None
     lowest, highest = float(values.min()), float(values.max())
-    if highest - lowest <= 0.5 * wraps[0]:  # the usual case, told without looking at the steps
+    if highest - lowest <= 0.5 * wraps[0]:
         return None
     steps = np.diff(values)
     for wrap in wraps:
@@ -45,10 +45,10 @@ def unroll(values: FloatArray, wraps: Sequence[float]) -> tuple[float, int] | No
         turns = -np.sign(steps[passed])
         left = np.abs(steps[passed] + turns * wrap)
         if left.max() <= min(max(wrap / 64.0, 4.0 * usual), wrap / 4.0):
-            places = np.flatnonzero(passed) + 1
-            for place, turn in zip(places, turns, strict=True):
-                values[place:] += turn * wrap
-            return wrap, len(places)
+            carried = np.zeros(len(values))
+            carried[np.flatnonzero(passed) + 1] = turns * wrap
+            values += np.cumsum(carried)
+            return wrap, len(turns)
     return None
 
 
@@ -65,23 +65,31 @@ def carry_on_joints(samples: Samples, signals: LogColumns, arm: Arm, found: Find
 
     A counter cannot tell by how many whole ranges it is off: the angle goes to its target, else into its joint's range.
     """
-    for j, joint in enumerate(arm.joints):
-        if samples.target is not None and signals.target is not None:
-            _unroll_one(samples.target[:, j], signals.target[j], f"{joint} target", found, place)
-        rolled = _unroll_one(samples.angle[:, j], signals.angle[j], f"{joint} angle", found, place)
-        if rolled is not None:
-            samples.angle[:, j] += rolled * _ranges_off(samples, j, rolled, arm)
+    if samples.target is not None and signals.target is not None:
+        _unroll_each(samples.target, signals.target, arm.joints, "target", found, place)
+    for j, wrap in _unroll_each(samples.angle, signals.angle, arm.joints, "angle", found, place):
+        samples.angle[:, j] += wrap * _ranges_off(samples, j, wrap, arm)
 
 
-def _unroll_one(values: FloatArray, signal: Signal, name: str, found: Findings, place: str) -> float | None:
-    rolled = unroll(values, signal.wraps)
-    if rolled is None:
-        return None
-    counts = rolled[0] / abs(signal.factor)
-    bits = round(np.log2(counts))
-    counter = f"{bits}-bit counter" if np.isclose(counts, 2.0**bits, rtol=1e-9) else "one-turn reading"
-    found.warning(f"the {counter} of the {name} rolled over {_times(rolled[1])}: carried on", place=place)
-    return rolled[0]
+def _unroll_each(
+    values: FloatArray, signals: Sequence[Signal], joints: Sequence[str], name: str, found: Findings, place: str
+) -> list[tuple[int, float]]:
+    """Carry on the counters of the joints' signals, shape (k, n); give the joints that rolled over and their ranges."""
+    smallest = min((signal.wraps[0] for signal in signals if signal.wraps), default=np.inf)
+    if len(values) < 2 or values.max() - values.min() <= 0.5 * smallest:  # the usual case, told at a glance
+        return []
+    rolled = []
+    for j, (joint, signal) in enumerate(zip(joints, signals, strict=True)):
+        passed = unroll(values[:, j], signal.wraps)
+        if passed is not None:
+            counts = passed[0] / abs(signal.factor)
+            bits = round(np.log2(counts))
+            counter = f"{bits}-bit counter" if np.isclose(counts, 2.0**bits, rtol=1e-9) else "one-turn reading"
+            found.warning(
+                f"the {counter} of the {joint} {name} rolled over {_times(passed[1])}: carried on", place=place
+            )
+            rolled.append((j, passed[0]))
+    return rolled
 
 
 def _ranges_off(samples: Samples, j: int, wrap: float, arm: Arm) -> int:
