@@ -50,7 +50,7 @@ def prediction_text(prediction: Prediction) -> str:
             rows.append([run.name, joint, significant(float(ratio), 3), length_text(float(at), 4), verdict])
     parts.append(text_table(["run", "joint", "largest sticking ratio", "at s", "so it"], rows))
     rows = [
-        [run.name, length_text(run.slow.rms), f"{len(run.slow.jumps)}"]
+        [run.name, length_text(run.slow.tracking_rms), f"{len(run.slow.jumps)}"]
         for run in prediction.runs
     ]
     parts.append(text_table(["run", "rms if moved very slowly", "jumps then"], rows))

@@ -1,0 +1,124 @@
+"""Everything that a report tells, worked out: the four questions, and one run held against another."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from armeval.errors import InputError
+from armeval.evaluate.compare import Comparison, compare
+from armeval.evaluate.document import JsonValue, document
+from armeval.evaluate.locate import Location
+from armeval.evaluate.locate_trial import has_logs, locate_trial
+from armeval.evaluate.measure import Measurement, measure
+from armeval.evaluate.plan import plan_trial
+from armeval.evaluate.predict import Prediction, predict
+from armeval.evaluate.regions import Region
+from armeval.evaluate.run_errors import RunErrors
+from armeval.model.trajectory import Trajectory
+from armeval.model.trial import Trial
+from armeval.progress import Progress, silent
+
+
+@dataclass(frozen=True, eq=False)
+class Answers:
+    """What a report tells.
+
+    Attributes
+    ----------
+    trial, trajectory
+        What was asked about, and its plan.
+    measurement
+        None where no run has logs.
+    prediction, location
+        Of every run.
+    before, after
+        The two runs that are compared, measured where both have logs, else predicted; None where there is no such pair.
+    comparison
+        Of these two.
+    """
+
+    trial: Trial
+    trajectory: Trajectory
+    measurement: Measurement | None
+    prediction: Prediction
+    location: Location
+    before: RunErrors | None
+    after: RunErrors | None
+    comparison: Comparison | None
+
+    @property
+    def warnings(self) -> tuple[str, ...]:
+        """What the reader should know, each once."""
+        measured = self.measurement.warnings if self.measurement is not None else ()
+        return tuple(dict.fromkeys((*measured, *self.prediction.warnings, *self.location.warnings)))
+
+    def to_document(self) -> dict[str, JsonValue]:
+        """Give the JSON document ``armeval/report/1``."""
+        content = {
+            "predict": self.prediction.to_document(),
+            "measure": self.measurement.to_document() if self.measurement is not None else None,
+            "locate": self.location.to_document(),
+            "comparison": self.comparison.to_document() if self.comparison is not None else None,
+        }
+        return document("report", self.trial.title, self.warnings, content)
+
+
+def answer(
+    trial: Trial, *, before: str | None = None, after: str | None = None, progress: Progress = silent
+) -> Answers:
+    """Ask all questions of a trial.
+
+    Parameters
+    ----------
+    trial
+        With or without logs.
+    before, after
+        Names of the runs to compare; default: the first bare and the first compensated one.
+    progress
+        Told how far the work has come.
+
+    Raises
+    ------
+    InputError
+        If the path cannot be followed, a log cannot be used, or there is no run of a given name.
+    """
+    plan = plan_trial(trial)
+    measurement = measure(trial, trajectory=plan, progress=progress) if has_logs(trial) else None
+    prediction = predict(trial, trajectory=plan, progress=progress)
+    location = locate_trial(trial, measurement, prediction)
+    first = _chosen(trial, before, compensated=False)
+    second = _chosen(trial, after, compensated=True)
+    if first is not None and first == second:
+        raise InputError(f"`{first}` cannot be compared with itself", "give two different runs")
+    pair = _pair(first, second, measurement, prediction)
+    if pair is None:
+        return Answers(trial, plan, measurement, prediction, location, None, None, None)
+    source = pair[0].tracks[0].source
+    comparison = compare(
+        *pair,
+        regions_before=_regions(location, pair[0].name, source),
+        regions_after=_regions(location, pair[1].name, source),
+    )
+    return Answers(trial, plan, measurement, prediction, location, *pair, comparison)
+
+
+def _chosen(trial: Trial, name: str | None, *, compensated: bool) -> str | None:
+    if name is not None:
+        return trial.run(name).name
+    return next((run.name for run in trial.runs if run.compensated == compensated), None)
+
+
+def _pair(
+    first: str | None, second: str | None, measurement: Measurement | None, prediction: Prediction
+) -> tuple[RunErrors, RunErrors] | None:
+    """Give both runs as measured, or where one has no logs, both as predicted: like is held against like."""
+    if first is None or second is None:
+        return None
+    measured = {run.name: run for run in measurement.runs} if measurement is not None else {}
+    if first in measured and second in measured:
+        return measured[first], measured[second]
+    return prediction.run(first).errors, prediction.run(second).errors
+
+
+def _regions(location: Location, name: str, source: str) -> tuple[Region, ...]:
+    return next((run.regions for run in location.runs if run.name == name and run.source == source), ())
