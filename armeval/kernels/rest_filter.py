@@ -1,0 +1,217 @@
+"""Did a joint rest, or only move slowly? Many simulated joints follow one stretch of a log; those that contradict it die.
+
+A particle filter (Gordon, Salmond & Smith 1993) over one joint with dry friction under a known servo torque. Each
+particle is one way in which the joint may have moved: angle, speed and torque at the start, its inertia, friction and
+cogging slope are drawn at random; its motion is then J v' = torque - friction with friction as a bounded impulse, so
+that a particle can come to rest, wait until the torque has built up, and break away. Each is weighed by the encoder
+counts. The share of the weight that rested is the probability of a rest; when and where these rested is the answer.
+"""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+import numpy as np
+
+from armeval.arrays import FloatArray, IntArray
+from armeval.kernels.compile import jit
+
+_Q, _V, _W, _SLOPE, _INERTIA, _COULOMB, _STATIC, _SINCE, _RESTS, _SLOTS = range(10)
+_MOST_RESTS = 4  # that a particle remembers, each as first sample, last sample and angle
+_FIELDS = _SLOTS + 3 * _MOST_RESTS
+_POOL = 1 << 16
+_LEAST_LOG_WEIGHT = -50.0
+
+
+class RestPrior(NamedTuple):
+    """What is thought of the joint before the counts are looked at; angles and torques at the joint.
+
+    Attributes
+    ----------
+    speed, speed_spread
+        At the start of the stretch [rad/s].
+    acceleration_spread
+        Spread of the acceleration at the start [rad/s^2].
+    inertia, inertia_spread, friction_spread
+        Inertia [kg m^2] and the relative spreads of it and of friction (logarithmic).
+    coulomb, static, stribeck_speed
+        Friction [N m], [N m], [rad/s].
+    slope, slope_spread
+        Cogging torque per angle here [N m/rad].
+    wander
+        Torque [N m] by which a millisecond of motion changes the unknown rest of the torque, one sigma.
+    """
+
+    speed: float
+    speed_spread: float
+    acceleration_spread: float
+    inertia: float
+    inertia_spread: float
+    friction_spread: float
+    coulomb: float
+    static: float
+    stribeck_speed: float
+    slope: float
+    slope_spread: float
+    wander: float
+
+
+def normal_pool(seed: int) -> FloatArray:
+    """Draw the standard normal numbers that :func:`rest_probability` uses over and over, shape (65536,)."""
+    return np.random.default_rng(seed).standard_normal(_POOL)
+
+
+@jit
+def rest_probability(
+    samples: IntArray,
+    time: FloatArray,
+    counts: FloatArray,
+    torque: FloatArray,
+    slow: FloatArray,
+    count: float,
+    tolerance: float,
+    prior: RestPrior,
+    least_dwell: float,
+    particles: int,
+    normals: FloatArray,
+) -> FloatArray:
+    """Weigh rest against slow motion over one stretch of a log.
+
+    Parameters
+    ----------
+    samples
+        Shape (s,). Samples of the log to step through, rising.
+    time, counts, torque, slow
+        Shape (k,). The log: time [s], encoder counts, servo torque without gravity [N m], and the speed [rad/s] below
+        which the joint counts as resting.
+    count
+        Angle of one count [rad].
+    tolerance
+        By how much a particle may leave the count's width, one sigma [counts].
+    prior
+        What is thought before.
+    least_dwell
+        Shortest rest that counts [s].
+    particles
+        How many.
+    normals
+        Shape (65536,). Standard normal numbers.
+
+    Returns
+    -------
+    Shape (3, s): the probability that a sample lies within a rest of at least ``least_dwell``; mean and spread of the
+    angle [counts] at which it rests then.
+    """
+    P = np.empty((particles, _FIELDS))
+    Q = np.empty((particles, _FIELDS))
+    log_weight = np.zeros(particles)
+    weight = np.empty(particles)
+    mask = normals.shape[0] - 1
+    draw = 0
+    origin = counts[samples[0]]
+    for p in range(particles):
+        row = P[p]
+        row[_Q] = count * ((p + 0.5) / particles - 0.5)
+        row[_V] = prior.speed + prior.speed_spread * normals[draw & mask]
+        row[_INERTIA] = prior.inertia * np.exp(prior.inertia_spread * normals[(draw + 1) & mask])
+        scale = np.exp(prior.friction_spread * normals[(draw + 2) & mask])
+        row[_COULOMB] = prior.coulomb * scale
+        row[_STATIC] = prior.static * scale
+        row[_SLOPE] = prior.slope + prior.slope_spread * normals[(draw + 3) & mask]
+        push = row[_INERTIA] * prior.acceleration_spread * normals[(draw + 4) & mask]
+        row[_W] = push + row[_COULOMB] * np.sign(row[_V])
+        row[_SINCE] = -1.0
+        row[_RESTS:] = 0.0
+        draw += 5
+    steps = samples.shape[0]
+    for s in range(steps - 1):
+        i, j = samples[s], samples[s + 1]
+        dt = time[j] - time[i]
+        rise = torque[j] - torque[i]
+        wander = prior.wander * np.sqrt(dt / 1e-3)
+        bound_speed = slow[i]
+        seen = counts[j] - origin
+        largest = -1e300
+        for p in range(particles):
+            row = P[p]
+            v = row[_V]
+            if v == 0.0:
+                bound = row[_STATIC]
+            else:
+                # A rational curve in the place of Stribeck's exponential: close enough here, and much faster.
+                bound = row[_COULOMB] + (row[_STATIC] - row[_COULOMB]) / (1.0 + (v / prior.stribeck_speed) ** 2)
+            free = v + dt * row[_W] / row[_INERTIA]
+            held = dt * bound / row[_INERTIA]
+            v = free - held if free > held else (free + held if free < -held else 0.0)
+            row[_V] = v
+            row[_W] += rise
+            if v != 0.0:
+                row[_Q] += dt * v
+                row[_W] += row[_SLOPE] * dt * v + wander * normals[draw & mask]
+                draw += 1
+            beyond = abs(row[_Q] / count - seen) - 0.5
+            if beyond > 0.0:
+                log_weight[p] = max(log_weight[p] - 0.5 * (beyond / tolerance) ** 2, _LEAST_LOG_WEIGHT)
+            largest = max(largest, log_weight[p])
+            if abs(v) < bound_speed:
+                if row[_SINCE] < 0.0:
+                    row[_SINCE] = s
+                since = int(row[_SINCE])
+                if time[j] - time[samples[since]] >= least_dwell - 1e-9:
+                    slot = _SLOTS + 3 * int(row[_RESTS])
+                    row[slot] = since
+                    row[slot + 1] = s + 1
+                    row[slot + 2] = row[_Q] / count
+            elif row[_SINCE] >= 0.0:
+                row[_SINCE] = -1.0
+                if row[_SLOTS + 3 * int(row[_RESTS]) + 1] > 0.0:
+                    row[_RESTS] = min(row[_RESTS] + 1, _MOST_RESTS - 1)
+        total = squares = 0.0
+        for p in range(particles):
+            weight[p] = np.exp(log_weight[p] - largest) if log_weight[p] < largest else 1.0
+            total += weight[p]
+            squares += weight[p] ** 2
+        if total * total < 0.5 * particles * squares:
+            # Systematic resampling; the copies part company through the wander and a small change of speed.
+            reach = 0.5 / particles
+            chosen, sum_to = 0, weight[0] / total
+            for p in range(particles):
+                while reach > sum_to and chosen < particles - 1:
+                    chosen += 1
+                    sum_to += weight[chosen] / total
+                Q[p] = P[chosen]
+                Q[p, _V] *= 1.0 + 0.02 * normals[draw & mask]
+                draw += 1
+                log_weight[p] = 0.0
+                reach += 1.0 / particles
+            P, Q = Q, P
+    # Every rest adds its weight from its first sample to its last: sums of steps up and steps down.
+    result = np.zeros((3, steps))
+    largest = log_weight.max()
+    total = 0.0
+    for p in range(particles):
+        w = np.exp(log_weight[p] - largest)
+        total += w
+        for r in range(_MOST_RESTS):
+            slot = _SLOTS + 3 * r
+            first, last, angle = int(P[p, slot]), int(P[p, slot + 1]), P[p, slot + 2]
+            if last > 0:
+                term = w
+                for c in range(3):
+                    result[c, first] += term
+                    result[c, last] -= term
+                    term *= angle
+    for c in range(3):
+        for s in range(1, steps):
+            result[c, s] += result[c, s - 1]
+    for s in range(steps):
+        mass = result[0, s]
+        if mass > 1e-9 * total:
+            mean = result[1, s] / mass
+            result[2, s] = np.sqrt(max(result[2, s] / mass - mean * mean, 0.0))
+            result[1, s] = origin + mean
+        else:
+            result[1, s] = origin
+            result[2, s] = 0.0
+        result[0, s] = max(mass / total, 0.0)
+    return result
