@@ -52,7 +52,8 @@ def _matching(wanted: Path) -> list[Path]:
     first = next(index for index, part in enumerate(parts) if any(mark in part for mark in _WILD))
     fixed, wild = Path(*parts[:first]), str(Path(*parts[first:]))
     try:
-        return sorted((file for file in fixed.glob(wild) if file.is_file()), key=lambda file: file.parts)
+        found = (file for file in fixed.glob(wild) if file.is_file() and not file.name.startswith("."))
+        return sorted(found, key=lambda file: file.parts)
     except (OSError, ValueError, NotImplementedError):
         return []
 

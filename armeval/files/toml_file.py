@@ -141,7 +141,7 @@ def _in_plain_words(fault: ErrorDetails, model: type[Table]) -> tuple[str, str]:
     cause = about.get("error")
     if isinstance(cause, InputError):
         return cause.findings[0].what, cause.findings[0].mend
-    shown = f'"{given}"' if isinstance(given, str) else f"{given!r}"
+    shown = _shown(given)
     match fault["type"]:
         case "missing":
             return f"`{key}` is missing", "add it"
@@ -157,6 +157,8 @@ def _in_plain_words(fault: ErrorDetails, model: type[Table]) -> tuple[str, str]:
             return f"{shown} is not a whole number", "write a whole number, without quotes"
         case "greater_than_equal":
             return f"{shown} is too small", f"give {about['ge']} or more"
+        case "list_type" if isinstance(given, dict):
+            return f"[{key}] is a single table", f"write it as [[{key}]]: there may be several"
         case "list_type":
             return f"{shown} is not a list", "write it in square brackets"
         case "too_short" | "too_long":
@@ -165,6 +167,15 @@ def _in_plain_words(fault: ErrorDetails, model: type[Table]) -> tuple[str, str]:
         case "dict_type" | "model_type":
             return f"{shown} stands where a table is due", f"write it under a heading such as [{key}]"
     return str(fault["msg"]), ""
+
+
+def _shown(given: object) -> str:
+    """Write a value as it stands in the file."""
+    if isinstance(given, dict):
+        return "a table"
+    if isinstance(given, bool):
+        return str(given).lower()
+    return f'"{given}"' if isinstance(given, str) else f"{given!r}"
 
 
 def _keys_at(model: type[Table], location: Sequence[int | str]) -> list[str]:

@@ -48,10 +48,10 @@ def _chain(urdf: urdf_text.Urdf, moving: tuple[urdf_text.Joint, ...], tip: str) 
     import pinocchio
 
     model = pinocchio.buildModelFromXML(urdf_text.written(urdf))
-    names = tuple(joint.name for joint in moving)
-    if tuple(model.names)[1:] != names or list(model.parents)[1:] != list(range(len(names))):
-        raise RuntimeError(f"pinocchio orders the joints {tuple(model.names)[1:]}, the file {names}")
-    frame = model.frames[model.getFrameId(tip, pinocchio.FrameType.BODY)]
+    numbers = {name: index for index, name in enumerate(urdf.joints)}
+    if list(model.names)[1:] != [f"joint{numbers[joint.name]}" for joint in moving]:
+        raise RuntimeError(f"pinocchio orders the joints {list(model.names)[1:]} in another way than the chain")
+    frame = model.frames[model.getFrameId(f"link{list(urdf.links).index(tip)}", pinocchio.FrameType.BODY)]
     turned = [pinocchio.SE3(_turned_to(_axis(model, index)), np.zeros(3)) for index in range(1, model.njoints)]
     before = [pinocchio.SE3.Identity(), *turned[:-1]]
     placements = [
@@ -60,7 +60,7 @@ def _chain(urdf: urdf_text.Urdf, moving: tuple[urdf_text.Joint, ...], tip: str) 
     ]
     bodies = [here.actInv(model.inertias[index + 1]) for index, here in enumerate(turned)]
     return Chain(
-        joints=names,
+        joints=tuple(joint.name for joint in moving),
         prismatic=np.array([joint.kind == "prismatic" for joint in moving]),
         placement=np.array(placements),
         mass=np.array([body.mass for body in bodies]),

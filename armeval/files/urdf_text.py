@@ -10,7 +10,6 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 from xml.etree import ElementTree
-from xml.sax.saxutils import quoteattr
 
 from armeval.errors import Findings, InputError, near
 
@@ -102,21 +101,25 @@ def parse(text: str, findings: Findings) -> Urdf:
 
 
 def written(urdf: Urdf) -> str:
-    """Write links and joints as URDF text again, with geometry and mass and nothing else."""
+    """Write links and joints as URDF text again, with geometry and mass and nothing else.
+
+    They are called ``link0``, ``joint0`` and so on, in the order of ``urdf``: names that users give may mean something
+    to the reader of the text.
+    """
+    number = {name: index for index, name in enumerate(urdf.links)}
     lines = ['<?xml version="1.0"?>', '<robot name="arm">']
-    for link in urdf.links.values():
+    for index, link in enumerate(urdf.links.values()):
         entries = " ".join(f'{key}="{value!r}"' for key, value in zip(_INERTIA, link.inertia, strict=True))
         inertial = f'<inertial>{_written(link.center)}<mass value="{link.mass!r}"/><inertia {entries}/></inertial>'
-        lines.append(f"<link name={quoteattr(link.name)}>{inertial if link.mass else ''}</link>")
-    for joint in urdf.joints.values():
+        lines.append(f'<link name="link{index}">{inertial if link.mass or any(link.inertia) else ""}</link>')
+    for index, joint in enumerate(urdf.joints.values()):
         moving = ""
         if joint.moves:
-            lower, upper = (joint.lower, joint.upper) if math.isfinite(joint.upper - joint.lower) else (0.0, 0.0)
-            moving = f'<axis xyz="{_spaced(joint.axis)}"/>'
-            moving += f'<limit lower="{lower!r}" upper="{upper!r}" effort="0" velocity="0"/>'
+            bounds = "" if math.isinf(joint.upper) else f'lower="{joint.lower!r}" upper="{joint.upper!r}" '
+            moving = f'<axis xyz="{_spaced(joint.axis)}"/><limit {bounds}effort="0" velocity="0"/>'
         lines.append(
-            f'<joint name={quoteattr(joint.name)} type="{joint.kind}">{_written(joint.origin)}'
-            f"<parent link={quoteattr(joint.parent)}/><child link={quoteattr(joint.child)}/>{moving}</joint>"
+            f'<joint name="joint{index}" type="{joint.kind}">{_written(joint.origin)}'
+            f'<parent link="link{number[joint.parent]}"/><child link="link{number[joint.child]}"/>{moving}</joint>'
         )
     return "\n".join([*lines, "</robot>"])
 

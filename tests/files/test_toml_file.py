@@ -62,6 +62,7 @@ def test_a_table_that_is_no_table_is_named():
     found = found_in({"wheel": {"radius": "1 m"}, "axle": 3})
     assert found.keys() == {"wheel", "axle"}
     assert "table" in found["axle"].what
+    assert "[[wheel]]" in found["wheel"].mend
 
 
 def test_places_read_as_they_stand_in_the_file():

@@ -1,9 +1,12 @@
 from __future__ import annotations
 
+import contextlib
 import math
 
 import numpy as np
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
 from armeval.errors import Findings, InputError
 from armeval.files.trial_file import read_trial
@@ -78,6 +81,12 @@ def test_a_log_whose_name_has_brackets_is_found_by_it(trial_file):
     write_log(trial_file.parent / "logs" / "bare[1].csv")
     text = altered('"logs/bare-*.csv"', '"logs/bare[1].csv"')
     assert len(read_trial(with_trial(trial_file, text)).runs[0].laps) == 1
+
+
+def test_hidden_files_are_no_logs(trial_file):
+    (trial_file.parent / "logs" / "._bare-1.csv").write_text("junk", encoding="utf-8")
+    text = altered('"logs/bare-*.csv"', '"logs/*.csv"')
+    assert len(read_trial(with_trial(trial_file, text)).runs[0].laps) == 3
 
 
 def test_progress_is_told_after_every_log(trial_file):
@@ -213,3 +222,11 @@ def test_no_fault_is_told_twice(trial_file):
 def test_an_arm_where_a_trial_is_due_and_a_folder_where_a_file_is_due_are_told(trial_file):
     assert "`arm`" in only_fault(lambda: read_trial(trial_file.parent / "arm.toml")).what
     assert "directory" in only_fault(lambda: read_trial(trial_file.parent)).what
+
+
+@settings(max_examples=60, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(cut=st.integers(0, len(TRIAL)), junk=st.text(max_size=6), gone=st.integers(0, 40))
+def test_whatever_is_cut_or_typed_into_the_text_the_answer_is_a_trial_or_an_input_error(trial_file, cut, junk, gone):
+    with_trial(trial_file, TRIAL[:cut] + junk + TRIAL[cut + gone :])
+    with contextlib.suppress(InputError):
+        read_trial(trial_file)

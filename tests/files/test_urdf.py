@@ -105,6 +105,20 @@ def test_names_with_signs_of_xml_in_them_survive():
     assert chain.joints[0] == 'a & "b" <c>'
 
 
+def test_names_that_mean_something_to_pinocchio_are_names_like_any_other():
+    chain = chain_of(URDF.replace('"base"', '"universe"').replace('"shoulder"', '"universe"'))
+    assert chain.joints == ("universe", "elbow")
+
+
+def test_a_part_with_moments_and_no_mass_counts_with_its_moments():
+    flywheel = URDF.replace(
+        '<link name="tip"/>',
+        '<link name="tip"><inertial><mass value="0"/>'
+        '<inertia ixx="1e-3" ixy="0" ixz="0" iyy="1e-3" iyz="0" izz="2e-3"/></inertial></link>',
+    )
+    assert chain_of(flywheel).inertia[1, 2, 2] == pytest.approx(7e-4 + 2e-3)
+
+
 def _read(text: str, findings: Findings):
     import tempfile
     from pathlib import Path

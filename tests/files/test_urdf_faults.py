@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import contextlib
 from pathlib import Path
 
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
-from armeval.errors import Finding, Findings
+from armeval.errors import Finding, Findings, InputError, InputWarning
 from armeval.files.urdf import read_urdf
 from tests.files.findings import faults, only_fault
 from tests.files.samples import URDF
@@ -152,8 +155,6 @@ def test_moments_that_no_body_has_are_doubted_and_still_read(tmp_path):
 
 
 def test_a_warning_without_a_listener_is_one_of_pythons_own(tmp_path):
-    from armeval.errors import InputWarning
-
     file = tmp_path / "arm.urdf"
     file.write_text(altered('lower="-3" upper="3"', 'lower="0" upper="0"'), encoding="utf-8")
     with pytest.warns(InputWarning, match="no limit") as caught:
@@ -163,3 +164,15 @@ def test_a_warning_without_a_listener_is_one_of_pythons_own(tmp_path):
 
 def test_a_missing_urdf_is_an_error_like_any_other(tmp_path):
     assert "no such file" in only_fault(lambda: read_urdf(tmp_path / "arm.urdf", "tip")).what
+
+
+@settings(max_examples=150, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(cut=st.integers(0, len(URDF)), junk=st.text(max_size=4), gone=st.integers(0, 30))
+def test_whatever_is_cut_or_typed_into_the_text_the_answer_is_a_chain_or_an_input_error(
+    tmp_path, capfd, cut, junk, gone
+):
+    file = tmp_path / "arm.urdf"
+    file.write_text(URDF[:cut] + junk + URDF[cut + gone :], encoding="utf-8")
+    with contextlib.suppress(InputError):
+        read_urdf(file, "tip", findings=Findings())
+    assert capfd.readouterr() == ("", "")
