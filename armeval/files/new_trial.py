@@ -6,7 +6,6 @@ import os
 import shutil
 from pathlib import Path
 
-import armeval
 from armeval.errors import InputError, near
 from armeval.files.atomic import write_folder
 
@@ -52,7 +51,7 @@ compensated = true
 
 def robots_folder() -> Path:
     """Give the folder of the shipped robots: inside the installed package, beside it in a source checkout."""
-    package = Path(armeval.__file__).parent
+    package = Path(__file__).parents[1]
     installed = package / "robots"
     return installed if installed.is_dir() else package.parent / "robots"
 
