@@ -14,7 +14,7 @@ from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError, near
 from armeval.files.arm_table import ARM_SCHEMA, ArmTable, CogMapTable, JointTable, ServoTable
 from armeval.files.quantities import JointKind
-from armeval.files.reading import Reading
+from armeval.files.reading import Reading, existing_file
 from armeval.files.toml_file import check_schema, read_toml, validate
 from armeval.files.urdf import read_urdf
 from armeval.model.arm import Arm
@@ -126,7 +126,7 @@ def _drives(
     if not isinstance(tables, dict):
         return {}
     if chain is not None:
-        for joint in tables.keys() - set(chain.joints):
+        for joint in [joint for joint in tables if joint not in chain.joints]:
             found.error(f"the arm has no moving joint `{joint}`", near(joint, chain.joints), place=f"[joint.{joint}]")
         for joint in chain.joints:
             if joint not in tables:
@@ -140,6 +140,7 @@ def _drives(
         slides = None if chain is None else bool(chain.prismatic[chain.index(joint)])
         table = validate(JointTable, content, found, inside=("joint", joint), kind=JointKind(slides))
         if table is None:
+            _map_is_there(joint, content, folder, found)
             continue
         try:
             drives[joint] = _drive(joint, table, bool(slides), folder, reading, found)
@@ -175,6 +176,18 @@ def _drive(joint: str, table: JointTable, slides: bool, folder: Path, reading: A
         index_offset=0.0 if table.cog_map is None else table.cog_map.index_offset,
         slides=slides,
     )
+
+
+def _map_is_there(joint: str, content: object, folder: Path, found: Findings) -> None:
+    """Note a missing cog map of a joint whose table has faults of its own: those must not hide it."""
+    named = content.get("cog_map") if isinstance(content, dict) else None
+    file = named.get("file") if isinstance(named, dict) else named
+    if not isinstance(file, str):
+        return
+    try:
+        existing_file(folder / file)
+    except InputError as fault:
+        found.take(fault, place=f"joint `{joint}`")
 
 
 def _cog_map(

@@ -121,7 +121,7 @@ def _move(filled: Path, place: Path) -> None:
 
 def _unwritable(target: Path, fault: OSError) -> InputError:
     reason = fault.strerror or str(fault)
-    at = f" (`{fault.filename}`)" if fault.filename and Path(str(fault.filename)) != target else ""
+    at = f" in `{Path(os.fsdecode(fault.filename)).parent}`" if isinstance(fault.filename, str | bytes) else ""
     return InputError(
         f"it cannot be written: {reason[:1].lower()}{reason[1:]}{at}",
         "choose a place that you may write to, with room on the disk",

@@ -166,6 +166,14 @@ def test_faults_in_arm_urdf_and_maps_are_told_at_once_each_with_its_file(folder)
     }
 
 
+def test_a_fault_in_a_drive_does_not_hide_that_its_map_is_missing(folder):
+    text = altered("slots = 12", "slots = 0").replace("maps/shoulder.csv", "maps/sholder.csv")
+    slots, missing = faults(lambda: read_arm(with_arm(folder, text)))
+    assert slots.place == "[joint.shoulder] slots"
+    assert (missing.file, missing.place) == (str(folder / "maps" / "sholder.csv"), "joint `shoulder`")
+    assert "`shoulder.csv`" in missing.mend
+
+
 def test_a_missing_urdf_comes_with_the_one_that_was_meant(folder):
     found = faults(lambda: read_arm(with_arm(folder, altered('"pair.urdf"', '"pear.urdf"'))))
     assert any("`pair.urdf`" in fault.mend for fault in found)
