@@ -94,26 +94,19 @@ def replay(
         seeds=(np.random.default_rng(seed),),
         start=start,
     )
-    k, n = trajectory.joint.shape
-    angle, speed, torque = np.empty((k, n, 1)), np.empty((k, n, 1)), np.empty((k, n, 1))
-    saturated, resting = np.empty((k, n, 1), np.bool_), np.empty((k, n, 1), np.bool_)
-    lost = replay_lap(
-        prepared.joints,
-        prepared.servo,
-        prepared.targets,
-        prepared.cogging,
-        prepared.table,
-        angle,
-        speed,
-        torque,
-        saturated,
-        resting,
-    )
+    lost = replay_lap(*prepared)
     if lost >= 0:
+        when = (lost - len(prepared.targets) + len(prepared.lap)) * arm.servo.period
         raise InputError(
-            f"the motion grows beyond all bounds after {trajectory.time[lost]:.3f} s: the servo loop is not stable",
+            f"the motion grows beyond all bounds at {when:.3f} s of the lap: the servo loop is not stable",
             "lower stiffness or damping, shorten the delay, or raise the speed filter's corner",
         )
+    lap = prepared.lap
     return Replay(
-        np.array(trajectory.time), angle[..., 0], speed[..., 0], torque[..., 0], saturated[..., 0], resting[..., 0]
+        time=np.array(trajectory.time),
+        angle=lap["angle"].copy(),
+        speed=lap["speed"].copy(),
+        torque=lap["torque"].copy(),
+        saturated=lap["cut"] != 0.0,
+        resting=lap["rests"] != 0.0,
     )

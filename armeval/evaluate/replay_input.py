@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -12,9 +12,8 @@ from armeval.errors import InputError
 from armeval.evaluate.cog_loss import compensation_table
 from armeval.kernels.chain import tip_jacobians
 from armeval.kernels.dynamics import mass_matrix_and_bias
-from armeval.kernels.joint_record import Records, joint_records
+from armeval.kernels.records import Records, joint_records, lap_records, sent_records, servo_record, target_records
 from armeval.kernels.periodic import hermite_table
-from armeval.kernels.servo import ServoArrays, Targets
 from armeval.model.arm import Arm
 from armeval.model.causes import Causes
 from armeval.model.trajectory import Trajectory
@@ -24,15 +23,17 @@ COG_CELLS = 4096
 """Least number of cells a turn in which the cogging torque is kept; their cubics miss order 84 by 3e-7 of its amplitude."""
 
 
-@dataclass(frozen=True, eq=False)
-class ReplayInput:
-    """Everything that :func:`armeval.kernels.replay.replay_lap` reads."""
+class ReplayInput(NamedTuple):
+    """What :func:`armeval.kernels.replay.replay_lap` takes, in its order."""
 
     joints: Records
-    servo: ServoArrays
-    targets: Targets
+    servo: Records
+    targets: Records
+    substeps: int
     cogging: FloatArray
-    table: FloatArray
+    tables: FloatArray
+    sent: Records
+    lap: Records
 
 
 def replay_input(
@@ -63,48 +64,50 @@ def replay_input(
         raise InputError(f"the trajectory is not sampled at the servo's period of {period:g} s", "plan it for this arm")
     if substeps < 1:
         raise InputError(f"the replay takes {substeps} steps a servo period", "give at least 1", place="--substeps")
-    servo, drives = arm.servo, arm.drives
+    drives = arm.drives
     cogging = np.stack([_cog_table(arm, i) for i in range(n)])
-    table = np.zeros((n, lanes, compensation.table_bins + 2))
+    tables = np.zeros((n, lanes, compensation.table_bins + 2))
     for lane, rng in enumerate(seeds):
         for i, drive in enumerate(drives):
             if compensated and drive.cog_map is not None:
                 entries = compensation_table(drive.cog_map, compensation, rng)
-                table[i, lane] = np.concatenate([entries, entries[:2]])
-    delay = servo.delay / period if causes.servo_lag else 0.0
+                tables[i, lane] = np.concatenate([entries, entries[:2]])
+    delay = arm.servo.delay / period if causes.servo_lag else 0.0
     whole = math.floor(delay + 1e-9)
+    servo = _servo(arm, causes, compensated, compensation)
+    servo["delay_share"] = max(delay - whole, 0.0)
     return ReplayInput(
         joints=_records(arm, causes, compensation, trajectory.joint[0] if start is None else start, lanes),
-        servo=ServoArrays(
-            period=period,
-            substeps=substeps,
-            settle=max(math.ceil(settle / period - 1e-9), 0),
-            delay_periods=whole,
-            delay_share=max(delay - whole, 0.0),
-            speed_gain=-math.expm1(-2.0 * math.pi * servo.speed_cutoff * period) if causes.servo_lag else 1.0,
-            closes_at_tip=servo.law == "tip_impedance",
-            holds_gravity=servo.gravity_feedforward,
-            compensates=compensated,
-            takes_nearest=compensation.interpolation == "nearest",
-            tip_stiffness=np.array(servo.tip_stiffness),
-            tip_damping=np.array(servo.tip_damping),
-            free_fall=np.array(arm.gravity),
-            sent=np.zeros((whole + 1, n, lanes)),
-            tip=np.array(arm.chain.tip),
-        ),
-        targets=_targets(arm, trajectory, causes),
+        servo=servo,
+        targets=_targets(arm, trajectory, causes, max(math.ceil(settle / period - 1e-9), 0)),
+        substeps=substeps,
         cogging=cogging,
-        table=table,
+        tables=tables,
+        sent=sent_records(whole + 1, n, lanes),
+        lap=lap_records(len(trajectory.time), n, lanes),
     )
 
 
+def _servo(arm: Arm, causes: Causes, compensated: bool, compensation: Compensation) -> Records:
+    given, servo = arm.servo, servo_record()
+    servo["period"] = given.period
+    servo["speed_gain"] = -math.expm1(-2.0 * math.pi * given.speed_cutoff * given.period) if causes.servo_lag else 1.0
+    servo["closes_at_tip"] = given.law == "tip_impedance"
+    servo["holds_weight"] = given.gravity_feedforward
+    servo["compensates"] = compensated
+    servo["takes_nearest"] = compensation.interpolation == "nearest"
+    servo["tip_stiffness"], servo["tip_damping"] = given.tip_stiffness, given.tip_damping
+    servo["free_fall"], servo["tip"] = arm.gravity, arm.chain.tip
+    return servo
+
+
 def _cog_table(arm: Arm, joint: int) -> FloatArray:
-    """Shape (cells + 2, 2): torque, and slope times the cells' width, at even motor angles; the first two come again."""
+    """Shape (2, cells + 2): torque, and slope times the cells' width, at even motor angles; the first two come again."""
     cells = max([COG_CELLS] + [len(d.cog_map.torque) for d in arm.drives if d.cog_map is not None])
     cog_map = arm.drives[joint].cog_map
     values = np.zeros(cells) if cog_map is None else _resampled(cog_map.torque, cells)
-    nodes = hermite_table(values) * [1.0, 2.0 * np.pi / cells]
-    return np.concatenate([nodes, nodes[:2]])
+    nodes = hermite_table(values).T * [[1.0], [2.0 * np.pi / cells]]
+    return np.concatenate([nodes, nodes[:, :2]], axis=1)
 
 
 def _resampled(values: FloatArray, cells: int) -> FloatArray:
@@ -143,21 +146,24 @@ def _records(arm: Arm, causes: Causes, compensation: Compensation, start: FloatA
         "angle": np.asarray(start, dtype=np.float64),
     }
     for name, values in per_lane.items():
-        joints[name] = values[:, None]
+        joints[name] = values if lanes == 1 else values[:, None]
     return joints
 
 
-def _targets(arm: Arm, trajectory: Trajectory, causes: Causes) -> Targets:
-    q, v = np.array(trajectory.joint), np.array(trajectory.joint_speed)
+def _targets(arm: Arm, trajectory: Trajectory, causes: Causes, settling: int) -> Records:
+    """Targets of the periods of settling, at rest at the first target, and of the lap."""
+    q, v, a = np.array(trajectory.joint), np.array(trajectory.joint_speed), np.array(trajectory.joint_acceleration)
+    chain, gravity = arm.chain.arrays, np.array(arm.gravity)
     fed = np.zeros_like(q)
-    chain = arm.chain.arrays
-    rotors = np.array([d.gear_ratio**2 * d.rotor_inertia for d in arm.drives])
     if not causes.servo_lag or arm.servo.inertia_feedforward:
-        inertia, bias, weight = mass_matrix_and_bias(chain, np.array(arm.gravity), q, v)
-        fed += np.einsum("kij,kj->ki", inertia, trajectory.joint_acceleration) + rotors * trajectory.joint_acceleration
+        inertia, bias, weight = mass_matrix_and_bias(chain, gravity, q, v)
+        fed += np.einsum("kij,kj->ki", inertia, a) + a * [d.gear_ratio**2 * d.rotor_inertia for d in arm.drives]
         if not causes.servo_lag:
             fed += bias - weight + v * [d.viscous_friction for d in arm.drives]
             if not arm.servo.gravity_feedforward:
                 fed += weight
-    tip_speed = np.einsum("kri,ki->kr", tip_jacobians(chain, q), v)
-    return Targets(q, v, fed, np.array(trajectory.tip), tip_speed)
+    targets = target_records(q, v, fed, np.array(trajectory.tip), np.einsum("kri,ki->kr", tip_jacobians(chain, q), v))
+    still = np.repeat(targets[:1], settling)
+    for name in ("joint_speed", "torque", "tip_speed"):
+        still[name] = 0.0
+    return np.concatenate([still, targets])

@@ -9,14 +9,13 @@ chapter 8).
 
 from __future__ import annotations
 
-import math
-
 import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.kernels.chain import ChainArrays
 from armeval.kernels.compile import jit, jit_inline
-from armeval.kernels.joint_record import Records, joint_records
+from armeval.kernels.elementary import sine_cosine
+from armeval.kernels.records import Records, joint_records
 
 
 @jit_inline
@@ -24,192 +23,163 @@ def place(joints: Records) -> None:
     """Place the joints' frames, ``rotation`` and ``origin``, and their ``axis`` for the joint angles ``at``."""
     for i in range(joints.shape[0]):
         joint = joints[i]
-        at, axis = joint["at"], joint["axis"]
-        R, p, P = joint["rotation"], joint["origin"], joint["placement"]
-        lanes = range(at.shape[0])
+        at, S, R, p, P = joint["at"], joint["axis"], joint["rotation"], joint["origin"], joint["placement"]
         if i == 0:
             for r in range(3):
-                for m in lanes:
-                    p[r, m] = P[r, 3]
-                    for c in range(3):
-                        R[r, c, m] = P[r, c]
+                p[r] = P[r, 3]
+                for c in range(3):
+                    R[r, c] = P[r, c]
         else:
             A, o = joints[i - 1]["rotation"], joints[i - 1]["origin"]
             for r in range(3):
-                for m in lanes:
-                    for c in range(3):
-                        R[r, c, m] = A[r, 0, m] * P[0, c] + A[r, 1, m] * P[1, c] + A[r, 2, m] * P[2, c]
-                    p[r, m] = o[r, m] + A[r, 0, m] * P[0, 3] + A[r, 1, m] * P[1, 3] + A[r, 2, m] * P[2, 3]
+                p[r] = o[r] + A[r, 0] * P[0, 3] + A[r, 1] * P[1, 3] + A[r, 2] * P[2, 3]
+                for c in range(3):
+                    R[r, c] = A[r, 0] * P[0, c] + A[r, 1] * P[1, c] + A[r, 2] * P[2, c]
         if joint["slides"] != 0.0:
             for r in range(3):
-                for m in lanes:
-                    p[r, m] += R[r, 2, m] * at[m]
-                    axis[r, m] = 0.0
-                    axis[3 + r, m] = R[r, 2, m]
+                p[r] += R[r, 2] * at
+                S[r] = 0.0
+                S[3 + r] = R[r, 2]
         else:
-            for m in lanes:
-                cosine, sine = math.cos(at[m]), math.sin(at[m])
-                for r in range(3):
-                    x, y = R[r, 0, m], R[r, 1, m]
-                    R[r, 0, m] = cosine * x + sine * y
-                    R[r, 1, m] = cosine * y - sine * x
-                x, y, z = R[0, 2, m], R[1, 2, m], R[2, 2, m]
-                axis[0, m], axis[1, m], axis[2, m] = x, y, z
-                axis[3, m] = p[1, m] * z - p[2, m] * y
-                axis[4, m] = p[2, m] * x - p[0, m] * z
-                axis[5, m] = p[0, m] * y - p[1, m] * x
+            sine, cosine = sine_cosine(at)
+            for r in range(3):
+                x, y = R[r, 0], R[r, 1]
+                R[r, 0] = cosine * x + sine * y
+                R[r, 1] = cosine * y - sine * x
+                S[r] = R[r, 2]
+            S[3] = p[1] * S[2] - p[2] * S[1]
+            S[4] = p[2] * S[0] - p[0] * S[2]
+            S[5] = p[0] * S[1] - p[1] * S[0]
 
 
 @jit_inline
-def gravity_torque(joints: Records, free_fall: FloatArray) -> None:
-    """Fill in ``gravity``, the joint torques that hold the arm still, for the frames of :func:`place`."""
-    n = joints.shape[0]
+def hold_weight(joints: Records, free_fall: FloatArray) -> None:
+    """Fill in ``weight``, the joint torques that hold the arm still, for the frames of :func:`place`."""
     gx, gy, gz = free_fall[0], free_fall[1], free_fall[2]
     carried = 0.0
-    for k in range(n):
-        i = n - 1 - k
+    for i in range(joints.shape[0] - 1, -1, -1):
         joint = joints[i]
-        R, p, S, C, held = joint["rotation"], joint["origin"], joint["axis"], joint["moment"], joint["gravity"]
+        R, p, S, C = joint["rotation"], joint["origin"], joint["axis"], joint["first_moment"]
         mass, center = joint["mass"], joint["center"]
         carried += mass
-        for m in range(held.shape[0]):
+        for r in range(3):
+            C[r] = mass * (p[r] + R[r, 0] * center[0] + R[r, 1] * center[1] + R[r, 2] * center[2])
+        if i < joints.shape[0] - 1:
+            D = joints[i + 1]["first_moment"]
             for r in range(3):
-                C[r, m] = mass * (p[r, m] + R[r, 0, m] * center[0] + R[r, 1, m] * center[1] + R[r, 2, m] * center[2])
-        if k > 0:
-            D = joints[i + 1]["moment"]
-            for m in range(held.shape[0]):
-                for r in range(3):
-                    C[r, m] += D[r, m]
-        for m in range(held.shape[0]):
-            # the weight's force is carried * g at the common centre: moment (sum of mass * centre) x g
-            held[m] = -(
-                S[0, m] * (C[1, m] * gz - C[2, m] * gy)
-                + S[1, m] * (C[2, m] * gx - C[0, m] * gz)
-                + S[2, m] * (C[0, m] * gy - C[1, m] * gx)
-                + carried * (S[3, m] * gx + S[4, m] * gy + S[5, m] * gz)
-            )
+                C[r] += D[r]
+        # the weight of what the joint carries: force carried * g, moment (sum of mass * centre) x g
+        joint["weight"] = -(
+            S[0] * (C[1] * gz - C[2] * gy)
+            + S[1] * (C[2] * gx - C[0] * gz)
+            + S[2] * (C[0] * gy - C[1] * gx)
+            + carried * (S[3] * gx + S[4] * gy + S[5] * gz)
+        )
 
 
 @jit_inline
 def equations_of_motion(joints: Records, free_fall: FloatArray) -> None:
-    """Fill in ``matrix`` and ``bias``, M and h, for the frames of :func:`place`."""
+    """Fill in ``matrix``, a row of M, and ``bias``, h, of every joint, for the frames of :func:`place`."""
     n = joints.shape[0]
     for i in range(n):
-        joint = joints[i]
-        R, p, S = joint["rotation"], joint["origin"], joint["axis"]
-        V, A, F = joint["velocity"], joint["acceleration"], joint["force"]
-        C, I = joint["moment"], joint["spin_inertia"]  # noqa: E741
-        mass, center, B, speed = joint["mass"], joint["center"], joint["inertia"], joint["speed"]
-        lanes = range(speed.shape[0])
-        if i == 0:
-            for m in lanes:
-                for r in range(6):
-                    V[r, m] = S[r, m] * speed[m]
-                for r in range(3):
-                    A[r, m] = 0.0
-                    A[3 + r, m] = -free_fall[r]
-        else:
-            W, D = joints[i - 1]["velocity"], joints[i - 1]["acceleration"]
-            for m in lanes:
-                v = speed[m]
-                x, y, z = W[0, m], W[1, m], W[2, m]
-                a, b, c, d, e, f = S[0, m], S[1, m], S[2, m], S[3, m], S[4, m], S[5, m]
-                A[0, m] = D[0, m] + v * (y * c - z * b)
-                A[1, m] = D[1, m] + v * (z * a - x * c)
-                A[2, m] = D[2, m] + v * (x * b - y * a)
-                A[3, m] = D[3, m] + v * (y * f - z * e + W[4, m] * c - W[5, m] * b)
-                A[4, m] = D[4, m] + v * (z * d - x * f + W[5, m] * a - W[3, m] * c)
-                A[5, m] = D[5, m] + v * (x * e - y * d + W[3, m] * b - W[4, m] * a)
-                for r in range(6):
-                    V[r, m] = W[r, m] + S[r, m] * v
-        for m in lanes:
-            # the body's inertia about the base origin: R B R^T + mass (c^2 - c c^T)
-            cx = p[0, m] + R[0, 0, m] * center[0] + R[0, 1, m] * center[1] + R[0, 2, m] * center[2]
-            cy = p[1, m] + R[1, 0, m] * center[0] + R[1, 1, m] * center[1] + R[1, 2, m] * center[2]
-            cz = p[2, m] + R[2, 0, m] * center[0] + R[2, 1, m] * center[1] + R[2, 2, m] * center[2]
-            hx, hy, hz = mass * cx, mass * cy, mass * cz
-            a0 = R[0, 0, m] * B[0, 0] + R[0, 1, m] * B[1, 0] + R[0, 2, m] * B[2, 0]
-            a1 = R[0, 0, m] * B[0, 1] + R[0, 1, m] * B[1, 1] + R[0, 2, m] * B[2, 1]
-            a2 = R[0, 0, m] * B[0, 2] + R[0, 1, m] * B[1, 2] + R[0, 2, m] * B[2, 2]
-            b0 = R[1, 0, m] * B[0, 0] + R[1, 1, m] * B[1, 0] + R[1, 2, m] * B[2, 0]
-            b1 = R[1, 0, m] * B[0, 1] + R[1, 1, m] * B[1, 1] + R[1, 2, m] * B[2, 1]
-            b2 = R[1, 0, m] * B[0, 2] + R[1, 1, m] * B[1, 2] + R[1, 2, m] * B[2, 2]
-            d0 = R[2, 0, m] * B[0, 0] + R[2, 1, m] * B[1, 0] + R[2, 2, m] * B[2, 0]
-            d1 = R[2, 0, m] * B[0, 1] + R[2, 1, m] * B[1, 1] + R[2, 2, m] * B[2, 1]
-            d2 = R[2, 0, m] * B[0, 2] + R[2, 1, m] * B[1, 2] + R[2, 2, m] * B[2, 2]
-            xx = a0 * R[0, 0, m] + a1 * R[0, 1, m] + a2 * R[0, 2, m] + hy * cy + hz * cz
-            xy = a0 * R[1, 0, m] + a1 * R[1, 1, m] + a2 * R[1, 2, m] - hx * cy
-            xz = a0 * R[2, 0, m] + a1 * R[2, 1, m] + a2 * R[2, 2, m] - hx * cz
-            yy = b0 * R[1, 0, m] + b1 * R[1, 1, m] + b2 * R[1, 2, m] + hx * cx + hz * cz
-            yz = b0 * R[2, 0, m] + b1 * R[2, 1, m] + b2 * R[2, 2, m] - hy * cz
-            zz = d0 * R[2, 0, m] + d1 * R[2, 1, m] + d2 * R[2, 2, m] + hx * cx + hy * cy
-            C[0, m], C[1, m], C[2, m] = hx, hy, hz
-            I[0, m], I[1, m], I[2, m], I[3, m], I[4, m], I[5, m] = xx, xy, xz, yy, yz, zz
-            # momentum (L, P) and the force that its change takes
-            wx, wy, wz, vx, vy, vz = V[0, m], V[1, m], V[2, m], V[3, m], V[4, m], V[5, m]
-            px = mass * vx + wy * hz - wz * hy
-            py = mass * vy + wz * hx - wx * hz
-            pz = mass * vz + wx * hy - wy * hx
-            lx = xx * wx + xy * wy + xz * wz + hy * vz - hz * vy
-            ly = xy * wx + yy * wy + yz * wz + hz * vx - hx * vz
-            lz = xz * wx + yz * wy + zz * wz + hx * vy - hy * vx
-            ax, ay, az, ux, uy, uz = A[0, m], A[1, m], A[2, m], A[3, m], A[4, m], A[5, m]
-            F[0, m] = xx * ax + xy * ay + xz * az + hy * uz - hz * uy + wy * lz - wz * ly + vy * pz - vz * py
-            F[1, m] = xy * ax + yy * ay + yz * az + hz * ux - hx * uz + wz * lx - wx * lz + vz * px - vx * pz
-            F[2, m] = xz * ax + yz * ay + zz * az + hx * uy - hy * ux + wx * ly - wy * lx + vx * py - vy * px
-            F[3, m] = mass * ux + ay * hz - az * hy + wy * pz - wz * py
-            F[4, m] = mass * uy + az * hx - ax * hz + wz * px - wx * pz
-            F[5, m] = mass * uz + ax * hy - ay * hx + wx * py - wy * px
+        _move(joints, i, free_fall)
+        _weigh(joints[i])
     carried = 0.0
-    for k in range(n):
-        i = n - 1 - k
+    for i in range(n - 1, -1, -1):
         joint = joints[i]
-        S, C, I, F = joint["axis"], joint["moment"], joint["spin_inertia"], joint["force"]  # noqa: E741
-        U, bias, row = joint["velocity"], joint["bias"], joint["matrix"]
+        S, F, U = joint["axis"], joint["force"], joint["velocity"]
+        C, B = joint["first_moment"], joint["inertia_at_base"]
         carried += joint["mass"]
-        lanes = range(bias.shape[0])
-        if k > 0:
-            child = joints[i + 1]
-            D, J, G = child["moment"], child["spin_inertia"], child["force"]
-            for m in lanes:
-                for r in range(3):
-                    C[r, m] += D[r, m]
-                for r in range(6):
-                    I[r, m] += J[r, m]
-                    F[r, m] += G[r, m]
-        for m in lanes:
-            bias[m] = (
-                S[0, m] * F[0, m]
-                + S[1, m] * F[1, m]
-                + S[2, m] * F[2, m]
-                + S[3, m] * F[3, m]
-                + S[4, m] * F[4, m]
-                + S[5, m] * F[5, m]
-            )
-            # momentum of everything carried, for unit speed of this joint; stands in the place of the velocity
-            wx, wy, wz, vx, vy, vz = S[0, m], S[1, m], S[2, m], S[3, m], S[4, m], S[5, m]
-            hx, hy, hz = C[0, m], C[1, m], C[2, m]
-            U[0, m] = I[0, m] * wx + I[1, m] * wy + I[2, m] * wz + hy * vz - hz * vy
-            U[1, m] = I[1, m] * wx + I[3, m] * wy + I[4, m] * wz + hz * vx - hx * vz
-            U[2, m] = I[2, m] * wx + I[4, m] * wy + I[5, m] * wz + hx * vy - hy * vx
-            U[3, m] = carried * vx + wy * hz - wz * hy
-            U[4, m] = carried * vy + wz * hx - wx * hz
-            U[5, m] = carried * vz + wx * hy - wy * hx
+        if i < n - 1:
+            outer = joints[i + 1]
+            D, E, G = outer["first_moment"], outer["inertia_at_base"], outer["force"]
+            for r in range(3):
+                C[r] += D[r]
+            for r in range(6):
+                B[r] += E[r]
+                F[r] += G[r]
+        joint["bias"] = S[0] * F[0] + S[1] * F[1] + S[2] * F[2] + S[3] * F[3] + S[4] * F[4] + S[5] * F[5]
+        # momentum of all that the joint carries for unit speed of the joint; the velocity is not needed any more
+        a, b, c, d, e, f = S[0], S[1], S[2], S[3], S[4], S[5]
+        U[0] = B[0] * a + B[1] * b + B[2] * c + C[1] * f - C[2] * e
+        U[1] = B[1] * a + B[3] * b + B[4] * c + C[2] * d - C[0] * f
+        U[2] = B[2] * a + B[4] * b + B[5] * c + C[0] * e - C[1] * d
+        U[3] = carried * d + b * C[2] - c * C[1]
+        U[4] = carried * e + c * C[0] - a * C[2]
+        U[5] = carried * f + a * C[1] - b * C[0]
         for j in range(i + 1):
-            T, mirrored = joints[j]["axis"], joints[j]["matrix"]
-            for m in lanes:
-                entry = (
-                    T[0, m] * U[0, m]
-                    + T[1, m] * U[1, m]
-                    + T[2, m] * U[2, m]
-                    + T[3, m] * U[3, m]
-                    + T[4, m] * U[4, m]
-                    + T[5, m] * U[5, m]
-                )
-                row[j, m] = entry
-                mirrored[i, m] = entry
-        for m in lanes:
-            row[i, m] += joint["reflected_inertia"]
+            T = joints[j]["axis"]
+            entry = T[0] * U[0] + T[1] * U[1] + T[2] * U[2] + T[3] * U[3] + T[4] * U[4] + T[5] * U[5]
+            joint["matrix"][j] = entry
+            joints[j]["matrix"][i] = entry
+        joint["matrix"][i] += joint["reflected_inertia"]
+
+
+@jit_inline
+def _move(joints: Records, i: int, free_fall: FloatArray) -> None:
+    """Fill in the body's ``velocity`` V, and its ``acceleration`` A at unchanging joint speeds in a falling frame."""
+    S, V, A, speed = joints[i]["axis"], joints[i]["velocity"], joints[i]["acceleration"], joints[i]["speed"]
+    if i == 0:
+        for r in range(3):
+            V[r], V[3 + r] = S[r] * speed, S[3 + r] * speed
+            A[r], A[3 + r] = 0.0 * speed, -free_fall[r]
+    else:
+        W, D = joints[i - 1]["velocity"], joints[i - 1]["acceleration"]
+        # A = D + W x S q', the spatial cross product of motions
+        A[0] = D[0] + speed * (W[1] * S[2] - W[2] * S[1])
+        A[1] = D[1] + speed * (W[2] * S[0] - W[0] * S[2])
+        A[2] = D[2] + speed * (W[0] * S[1] - W[1] * S[0])
+        A[3] = D[3] + speed * (W[1] * S[5] - W[2] * S[4] + W[4] * S[2] - W[5] * S[1])
+        A[4] = D[4] + speed * (W[2] * S[3] - W[0] * S[5] + W[5] * S[0] - W[3] * S[2])
+        A[5] = D[5] + speed * (W[0] * S[4] - W[1] * S[3] + W[3] * S[1] - W[4] * S[0])
+        for r in range(6):
+            V[r] = W[r] + S[r] * speed
+
+
+@jit_inline
+def _weigh(joint: Records) -> None:
+    """Fill in the body's inertia about the base origin, and the ``force`` that its motion takes."""
+    R, p, V, A, F = joint["rotation"], joint["origin"], joint["velocity"], joint["acceleration"], joint["force"]
+    mass, center, own = joint["mass"], joint["center"], joint["inertia"]
+    C, B = joint["first_moment"], joint["inertia_at_base"]
+    cx = p[0] + R[0, 0] * center[0] + R[0, 1] * center[1] + R[0, 2] * center[2]
+    cy = p[1] + R[1, 0] * center[0] + R[1, 1] * center[1] + R[1, 2] * center[2]
+    cz = p[2] + R[2, 0] * center[0] + R[2, 1] * center[1] + R[2, 2] * center[2]
+    hx, hy, hz = mass * cx, mass * cy, mass * cz
+    # R own R^T + mass (c^2 - c c^T): rows of R own first
+    a0 = R[0, 0] * own[0, 0] + R[0, 1] * own[1, 0] + R[0, 2] * own[2, 0]
+    a1 = R[0, 0] * own[0, 1] + R[0, 1] * own[1, 1] + R[0, 2] * own[2, 1]
+    a2 = R[0, 0] * own[0, 2] + R[0, 1] * own[1, 2] + R[0, 2] * own[2, 2]
+    b0 = R[1, 0] * own[0, 0] + R[1, 1] * own[1, 0] + R[1, 2] * own[2, 0]
+    b1 = R[1, 0] * own[0, 1] + R[1, 1] * own[1, 1] + R[1, 2] * own[2, 1]
+    b2 = R[1, 0] * own[0, 2] + R[1, 1] * own[1, 2] + R[1, 2] * own[2, 2]
+    d0 = R[2, 0] * own[0, 0] + R[2, 1] * own[1, 0] + R[2, 2] * own[2, 0]
+    d1 = R[2, 0] * own[0, 1] + R[2, 1] * own[1, 1] + R[2, 2] * own[2, 1]
+    d2 = R[2, 0] * own[0, 2] + R[2, 1] * own[1, 2] + R[2, 2] * own[2, 2]
+    xx = a0 * R[0, 0] + a1 * R[0, 1] + a2 * R[0, 2] + hy * cy + hz * cz
+    xy = a0 * R[1, 0] + a1 * R[1, 1] + a2 * R[1, 2] - hx * cy
+    xz = a0 * R[2, 0] + a1 * R[2, 1] + a2 * R[2, 2] - hx * cz
+    yy = b0 * R[1, 0] + b1 * R[1, 1] + b2 * R[1, 2] + hx * cx + hz * cz
+    yz = b0 * R[2, 0] + b1 * R[2, 1] + b2 * R[2, 2] - hy * cz
+    zz = d0 * R[2, 0] + d1 * R[2, 1] + d2 * R[2, 2] + hx * cx + hy * cy
+    C[0], C[1], C[2] = hx, hy, hz
+    B[0], B[1], B[2], B[3], B[4], B[5] = xx, xy, xz, yy, yz, zz
+    # momentum: linear P, angular L
+    wx, wy, wz, vx, vy, vz = V[0], V[1], V[2], V[3], V[4], V[5]
+    px = mass * vx + wy * hz - wz * hy
+    py = mass * vy + wz * hx - wx * hz
+    pz = mass * vz + wx * hy - wy * hx
+    lx = xx * wx + xy * wy + xz * wz + hy * vz - hz * vy
+    ly = xy * wx + yy * wy + yz * wz + hz * vx - hx * vz
+    lz = xz * wx + yz * wy + zz * wz + hx * vy - hy * vx
+    # its change: inertia times acceleration, and the spatial cross product of velocity and momentum
+    ax, ay, az, ux, uy, uz = A[0], A[1], A[2], A[3], A[4], A[5]
+    F[0] = xx * ax + xy * ay + xz * az + hy * uz - hz * uy + wy * lz - wz * ly + vy * pz - vz * py
+    F[1] = xy * ax + yy * ay + yz * az + hz * ux - hx * uz + wz * lx - wx * lz + vz * px - vx * pz
+    F[2] = xz * ax + yz * ay + zz * az + hx * uy - hy * ux + wx * ly - wy * lx + vx * py - vy * px
+    F[3] = mass * ux + ay * hz - az * hy + wy * pz - wz * py
+    F[4] = mass * uy + az * hx - ax * hz + wz * px - wx * pz
+    F[5] = mass * uz + ax * hy - ay * hx + wx * py - wy * px
 
 
 @jit
@@ -220,16 +190,16 @@ def evaluate_poses(
     n = joints.shape[0]
     for s in range(q.shape[0]):
         for i in range(n):
-            joints[i]["at"][0] = q[s, i]
-            joints[i]["speed"][0] = v[s, i]
+            joints[i]["at"] = q[s, i]
+            joints[i]["speed"] = v[s, i]
         place(joints)
-        gravity_torque(joints, free_fall)
+        hold_weight(joints, free_fall)
         equations_of_motion(joints, free_fall)
         for i in range(n):
-            h[s, i] = joints[i]["bias"][0]
-            g[s, i] = joints[i]["gravity"][0]
+            h[s, i] = joints[i]["bias"]
+            g[s, i] = joints[i]["weight"]
             for j in range(n):
-                M[s, i, j] = joints[i]["matrix"][j, 0]
+                M[s, i, j] = joints[i]["matrix"][j]
 
 
 def mass_matrix_and_bias(

@@ -25,16 +25,19 @@ A joint at rest keeps its speed at exactly zero: no creep, no smoothed sign func
 
 from __future__ import annotations
 
-import math
-
 from armeval.kernels.compile import jit_inline
-from armeval.kernels.joint_record import Records
+from armeval.kernels.lanes import anywhere, where
+from armeval.kernels.records import Records
 
 MOST_PASSES = 1000
 """After so many passes the solve is given up; only a value that is not a number gets there."""
 
 ROUNDING = 1e-12
 """Share of the terms' size by which a load may miss its tread."""
+
+
+LARGEST = 1e300
+"""A speed that no joint reaches: the bound of a joint without stop."""
 
 
 @jit_inline
@@ -47,7 +50,7 @@ def solve_speeds(joints: Records) -> int:
     """
     for passes in range(1, MOST_PASSES + 1):
         _solve_guess(joints)
-        if _mend_guess(joints) == 0.0:
+        if _guess_holds(joints):
             return passes
     return 0
 
@@ -56,90 +59,68 @@ def solve_speeds(joints: Records) -> int:
 def _solve_guess(joints: Records) -> None:
     """Solve for the speeds that the guessed states leave open, by L D L^T with the known ones masked out."""
     n = joints.shape[0]
-    stopped = 0.0
+    stopped = False
     for i in range(n):
         joint = joints[i]
-        x, state, free, known = joint["new_speed"], joint["state"], joint["free"], joint["known"]
-        pushed, bound, slowest, fastest = joint["pushed"], joint["friction"], joint["slowest"], joint["fastest"]
-        for m in range(x.shape[0]):
-            s = state[m]
-            free[m] = 1.0 if abs(s) == 1.0 else 0.0
-            known[m] = fastest[m] if s == 2.0 else (slowest[m] if s == -2.0 else 0.0)
-            x[m] = pushed[m] - s * bound[m] if abs(s) == 1.0 else known[m]
-            stopped += abs(known[m])
-    if stopped != 0.0:
+        state = joint["state"]
+        slides = abs(state) == 1.0
+        known = where(state == 2.0, joint["fastest"], where(state == -2.0, joint["slowest"], 0.0))
+        joint["free"] = where(slides, 1.0, 0.0)
+        joint["known"] = known
+        joint["new_speed"] = where(slides, joint["pushed"] - state * joint["friction"], known)
+        stopped = stopped or anywhere(known != 0.0)
+    if stopped:
         for i in range(n):
-            row, x, free = joints[i]["matrix"], joints[i]["new_speed"], joints[i]["free"]
+            x = joints[i]["new_speed"]
             for j in range(n):
-                known = joints[j]["known"]
-                for m in range(x.shape[0]):
-                    x[m] -= free[m] * row[j, m] * known[m]
+                x = x - joints[i]["free"] * joints[i]["matrix"][j] * joints[j]["known"]
+            joints[i]["new_speed"] = x
     for i in range(n):
-        row, factor, free = joints[i]["matrix"], joints[i]["factor"], joints[i]["free"]
+        matrix, factor, free = joints[i]["matrix"], joints[i]["factor"], joints[i]["free"]
         for j in range(i):
-            other = joints[j]["free"]
-            for m in range(free.shape[0]):
-                factor[j, m] = row[j, m] * (free[m] * other[m])
-        for m in range(free.shape[0]):
-            factor[i, m] = row[i, m] if free[m] == 1.0 else 1.0
+            factor[j] = matrix[j] * (free * joints[j]["free"])
+        factor[i] = where(free == 1.0, matrix[i], 1.0)
     for k in range(n):
-        pivot, y, inverse = joints[k]["factor"], joints[k]["new_speed"], joints[k]["load"]
-        for m in range(inverse.shape[0]):
-            inverse[m] = 1.0 / pivot[k, m]
+        inverse, y = 1.0 / joints[k]["factor"][k], joints[k]["new_speed"]
+        joints[k]["inverse"] = inverse
         for i in range(n - 1, k, -1):
-            factor, x, share = joints[i]["factor"], joints[i]["new_speed"], joints[i]["load"]
-            for m in range(x.shape[0]):
-                share[m] = factor[k, m] * inverse[m]
-                x[m] -= share[m] * y[m]
+            factor = joints[i]["factor"]
+            share = factor[k] * inverse
             for j in range(k + 1, i + 1):
-                across = joints[j]["factor"]
-                for m in range(x.shape[0]):
-                    factor[j, m] -= share[m] * across[k, m]
-            for m in range(x.shape[0]):
-                factor[k, m] = share[m]
+                factor[j] -= share * joints[j]["factor"][k]  # of the row j as yet undivided, for j goes before i
+            factor[k] = share
+            joints[i]["new_speed"] = joints[i]["new_speed"] - share * y
     for i in range(n - 1, -1, -1):
-        x, inverse = joints[i]["new_speed"], joints[i]["load"]
-        for m in range(x.shape[0]):
-            x[m] *= inverse[m]
+        x = joints[i]["new_speed"] * joints[i]["inverse"]
         for j in range(i + 1, n):
-            factor, y = joints[j]["factor"], joints[j]["new_speed"]
-            for m in range(x.shape[0]):
-                x[m] -= factor[i, m] * y[m]
+            x = x - joints[j]["factor"][i] * joints[j]["new_speed"]
+        joints[i]["new_speed"] = x
 
 
 @jit_inline
-def _mend_guess(joints: Records) -> float:
-    """Move the first joint that left its tread one state along; give the number of lanes where there was one."""
+def _guess_holds(joints: Records) -> bool:
+    """Whether every joint stays on its tread; in each lane, move the first one that does not one state along."""
     n = joints.shape[0]
-    fits_all = joints[0]["done"]
-    for m in range(fits_all.shape[0]):
-        fits_all[m] = 1.0
+    untouched = abs(joints[0]["state"]) <= 2.0
     for i in range(n):
         joint = joints[i]
-        x, state, load, size, row = joint["new_speed"], joint["state"], joint["load"], joint["size"], joint["matrix"]
-        pushed, bound, slowest, fastest = joint["pushed"], joint["friction"], joint["slowest"], joint["fastest"]
-        for m in range(x.shape[0]):
-            load[m] = pushed[m]
-            size[m] = abs(pushed[m])
+        matrix, x, state, bound = joint["matrix"], joint["new_speed"], joint["state"], joint["friction"]
+        load, size = joint["pushed"], abs(joint["pushed"])
         for j in range(n):
-            y = joints[j]["new_speed"]
-            for m in range(x.shape[0]):
-                part = row[j, m] * y[m]
-                load[m] -= part
-                size[m] += abs(part)
-        for m in range(x.shape[0]):
-            s, b = state[m], bound[m]
-            sliding = abs(s) == 1.0
-            value = x[m] if sliding else load[m]
-            slack = 0.0 if sliding else ROUNDING * size[m]
-            low = (0.0 if s > 0.0 else slowest[m]) if sliding else (-math.inf if s < 0.0 else (b if s > 0.0 else -b))
-            high = (fastest[m] if s > 0.0 else 0.0) if sliding else (math.inf if s > 0.0 else (-b if s < 0.0 else b))
-            # written so that a value that is not a number fits nowhere
-            fits = value >= low - slack and value <= high + slack
-            if not fits and fits_all[m] == 1.0:
-                state[m] = min(max(s + (1.0 if value > high else -1.0), -2.0), 2.0)
-                fits_all[m] = 0.0
-    wrong = 0.0
-    for m in range(fits_all.shape[0]):
-        wrong += 1.0 - fits_all[m]
-    return wrong
+            part = matrix[j] * joints[j]["new_speed"]
+            load = load - part
+            size = size + abs(part)
+        slides = abs(state) == 1.0
+        low = where(slides, where(state > 0.0, 0.0, joint["slowest"]), where(state > 0.0, bound, -bound))
+        high = where(slides, where(state > 0.0, joint["fastest"], 0.0), where(state < 0.0, -bound, bound))
+        low = where(state == -2.0, -LARGEST, low)
+        high = where(state == 2.0, LARGEST, high)
+        value = where(slides, x, load)
+        slack = where(slides, 0.0, ROUNDING * size)
+        # asked so that a value that is not a number fits nowhere
+        fits = (value >= low - slack) & (value <= high + slack)
+        moved = where(value > high, state + 1.0, state - 1.0)
+        moved = where(moved > 2.0, 2.0, where(moved < -2.0, -2.0, moved))
+        joint["state"] = where(fits, state, where(untouched, moved, state))
+        untouched = untouched & fits
+    return not anywhere(where(untouched, 0.0, 1.0) == 1.0)

@@ -8,136 +8,114 @@ Glocker 2008): half a step at the old speed, new speeds from the torques there w
 
 from __future__ import annotations
 
-import math
-
-from armeval.arrays import BoolArray, FloatArray
+from armeval.arrays import FloatArray
 from armeval.kernels.compile import jit, jit_inline
 from armeval.kernels.dynamics import equations_of_motion, place
-from armeval.kernels.friction import solve_speeds
-from armeval.kernels.joint_record import Records
-from armeval.kernels.servo import ServoArrays, Targets, run_servo
+from armeval.kernels.elementary import decay
+from armeval.kernels.friction import LARGEST, solve_speeds
+from armeval.kernels.lanes import take, where, with_lanes
+from armeval.kernels.records import Records
+from armeval.kernels.servo import cell_of, run_servo
 
 
 @jit_inline
-def add_cogging(joints: Records, cogging: FloatArray, step: float) -> None:
-    """Add the impulse of the cogging torque at the joint angles ``at`` to ``pushed``.
+def cog_torque(joint: Records, cogging: FloatArray, i: int) -> float:
+    """Give the cogging torque at joint ``i`` for its angle ``at``.
 
-    ``cogging`` of shape (n, c + 2, 2) holds the motor torque and its slope times the spacing at c even motor angles
-    over a turn, and the first two again; between them it is cubic (Hermite), so torque and slope are continuous.
+    ``cogging`` of shape (n, 2, cells + 2) holds the motor torque, and its slope times the width of a cell, at even
+    motor angles over a turn, and the first two again; between them it is cubic (Hermite), so both are continuous.
     """
-    for i in range(joints.shape[0]):
-        joint = joints[i]
-        gear, at, index, gain, pushed = (
-            joint["gear_ratio"],
-            joint["at"],
-            joint["index"],
-            joint["cog_gain"],
-            joint["pushed"],
-        )
-        cells = cogging.shape[1] - 2
-        for m in range(at.shape[0]):
-            turn = (gear * at[m] + index[m]) * (0.5 / math.pi)
-            place_in = (turn - math.floor(turn)) * cells
-            k = int(place_in)
-            f = place_in - k
-            a, b, s, t = cogging[i, k, 0], cogging[i, k + 1, 0], cogging[i, k, 1], cogging[i, k + 1, 1]
-            torque = a + f * (s + f * (3.0 * (b - a) - 2.0 * s - t + f * (s + t - 2.0 * (b - a))))
-            pushed[m] += step * gear * gain[m] * torque
+    gear = joint["gear_ratio"]
+    below, f = cell_of(gear * joint["at"] + joint["index"], cogging.shape[2] - 2)
+    a, b = take(cogging, i, 0, below), take(cogging, i, 0, below + 1.0)
+    s, t = take(cogging, i, 1, below), take(cogging, i, 1, below + 1.0)
+    rise = b - a
+    torque = a + f * (s + f * ((3.0 * rise - 2.0 * s - t) + f * (s + t - 2.0 * rise)))
+    return gear * joint["cog_gain"] * torque
 
 
 @jit_inline
 def step_arm(joints: Records, cogging: FloatArray, free_fall: FloatArray, step: float, share: float) -> int:
-    """Move the arm by one step, in which ``act_after`` acts for ``share`` of the time and ``act_before`` else."""
+    """Move the arm by one step, in which ``acts_after`` acts for ``share`` of the time and ``acts_before`` else."""
     n = joints.shape[0]
     half = 0.5 * step
     for i in range(n):
-        joint = joints[i]
-        at, angle, speed = joint["at"], joint["angle"], joint["speed"]
-        for m in range(at.shape[0]):
-            at[m] = angle[m] + half * speed[m]
+        joints[i]["at"] = joints[i]["angle"] + half * joints[i]["speed"]
     place(joints)
     equations_of_motion(joints, free_fall)
     for i in range(n):
         joint = joints[i]
-        at, speed, pushed, row = joint["at"], joint["speed"], joint["pushed"], joint["matrix"]
-        before, after, bias, friction = joint["act_before"], joint["act_after"], joint["bias"], joint["friction"]
-        slowest, fastest = joint["slowest"], joint["fastest"]
-        coulomb, static, stribeck, viscous = (
-            joint["coulomb_friction"],
-            joint["static_friction"],
-            joint["stribeck_speed"],
-            joint["viscous_friction"],
-        )
-        lower, upper = joint["lower"], joint["upper"]
-        for m in range(at.shape[0]):
-            pushed[m] = step * (before[m] + share * (after[m] - before[m]) - bias[m])
+        at, before, matrix = joint["at"], joint["acts_before"], joint["matrix"]
+        torque = before + share * (joint["acts_after"] - before) - joint["bias"] + cog_torque(joint, cogging, i)
+        pushed = step * torque
         for j in range(n):
-            other = joints[j]["speed"]
-            for m in range(at.shape[0]):
-                pushed[m] += row[j, m] * other[m]
-        for m in range(at.shape[0]):
-            row[i, m] += step * viscous[m]
-            friction[m] = step * (coulomb[m] + (static[m] - coulomb[m]) * math.exp(-((speed[m] / stribeck) ** 2)))
-            slowest[m] = min((lower - at[m]) / step, 0.0)
-            fastest[m] = max((upper - at[m]) / step, 0.0)
-    add_cogging(joints, cogging, step)
+            pushed = pushed + matrix[j] * joints[j]["speed"]
+        joint["pushed"] = pushed
+        pace = joint["speed"] * (1.0 / joint["stribeck_speed"])
+        coulomb = joint["coulomb_friction"]
+        joint["friction"] = step * (coulomb + (joint["static_friction"] - coulomb) * decay(pace * pace))
+        slowest, fastest = (joint["lower"] - at) * (1.0 / step), (joint["upper"] - at) * (1.0 / step)
+        joint["slowest"] = where(slowest < -LARGEST, -LARGEST, where(slowest > 0.0, 0.0, slowest))
+        joint["fastest"] = where(fastest > LARGEST, LARGEST, where(fastest < 0.0, 0.0, fastest))
+    for i in range(n):
+        joints[i]["matrix"][i] += step * joints[i]["viscous_friction"]
     passes = solve_speeds(joints)
     for i in range(n):
         joint = joints[i]
-        at, angle, speed, new = joint["at"], joint["angle"], joint["speed"], joint["new_speed"]
-        for m in range(at.shape[0]):
-            angle[m] = at[m] + half * new[m]
-            speed[m] = new[m]
+        speed = joint["new_speed"]
+        joint["angle"] = joint["at"] + half * speed
+        joint["speed"] = speed
     return passes
 
 
 @jit
 def replay_lap(
-    joints: Records,
-    servo: ServoArrays,
-    targets: Targets,
+    joint_records: Records,
+    servo_records: Records,
+    targets: Records,
+    substeps: int,
     cogging: FloatArray,
-    table: FloatArray,
-    angle: FloatArray,
-    speed: FloatArray,
-    torque: FloatArray,
-    saturated: BoolArray,
-    resting: BoolArray,
+    tables: FloatArray,
+    sent_records: Records,
+    lap_records: Records,
 ) -> int:
-    """Replay one lap.
+    """Replay one lap of one member or of eight.
 
     Parameters
     ----------
-    joints
+    joint_records
         Shape (n,), with the start in ``angle`` and ``speed``.
-    servo, targets
-        The servo and what it is told, k periods.
-    cogging, table
-        As :func:`add_cogging` and :func:`armeval.kernels.servo.run_servo` take them.
-    angle, speed, torque, saturated, resting
-        Shape (k, n, lanes), overwritten: joint angles and speeds at the start of each period, the torque commanded
-        there, whether it was cut at the limit, and whether the joint was at rest.
+    servo_records, targets
+        Shape (1,): the servo. Shape (s + k,): what it is told in s periods of settling and the lap's k periods.
+    substeps
+        Time steps in a servo period.
+    cogging, tables, sent_records
+        As :func:`cog_torque`, :func:`armeval.kernels.servo.add_compensation` and
+        :func:`armeval.kernels.servo.send_torques` take them.
+    lap_records
+        Shape (k,), overwritten: how the lap went.
 
     Returns
     -------
-    -1, or the period in which the state stopped being a number.
+    -1, or the period, settling included, in which the state stopped being a number.
     """
-    n = joints.shape[0]
-    periods = targets.joint.shape[0]
-    step = servo.period / servo.substeps
-    for k in range(-servo.settle, periods):
-        run_servo(joints, servo, targets, table, k, k == -servo.settle)
-        if k >= 0:
-            for i in range(n):
+    joints, sent, lap = with_lanes(joint_records), with_lanes(sent_records), with_lanes(lap_records)
+    servo = servo_records[0]
+    settling = targets.shape[0] - lap.shape[0]
+    step = servo["period"] / substeps
+    for period in range(targets.shape[0]):
+        run_servo(joints, servo, targets[period], tables, sent, period)
+        if period >= settling:
+            row = lap[period - settling]
+            for i in range(joints.shape[0]):
                 joint = joints[i]
-                for m in range(angle.shape[2]):
-                    angle[k, i, m] = joint["angle"][m]
-                    speed[k, i, m] = joint["speed"][m]
-                    torque[k, i, m] = joint["ask"][m]
-                    saturated[k, i, m] = joint["cut"][m] != 0.0
-                    resting[k, i, m] = joint["state"][m] == 0.0
-        for s in range(servo.substeps):
-            share = min(max(s + 1.0 - servo.delay_share * servo.substeps, 0.0), 1.0)
-            if step_arm(joints, cogging, servo.free_fall, step, share) == 0:
-                return max(k, 0)
+                row["angle"][i] = joint["angle"]
+                row["speed"][i] = joint["speed"]
+                row["torque"][i] = joint["asked"]
+                row["cut"][i] = joint["cut"]
+                row["rests"][i] = where(joint["state"] == 0.0, 1.0, 0.0)
+        for s in range(substeps):
+            share = min(max(s + 1.0 - servo["delay_share"] * substeps, 0.0), 1.0)
+            if step_arm(joints, cogging, servo["free_fall"], step, share) == 0:
+                return period
     return -1
