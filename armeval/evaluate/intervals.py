@@ -22,6 +22,7 @@ import numpy as np
 from scipy import stats
 
 from armeval.arrays import FloatArray, IntArray
+from armeval.kernels.block_bootstrap import studentised_shifts
 
 METHOD = (
     "circular block bootstrap along the path, studentised, on the logarithm of the mean square; block length after "
@@ -30,7 +31,7 @@ METHOD = (
 )
 BINS = 1000
 DRAWS = 999
-_DRAWS_AT_ONCE = 250
+MOST_BLOCKS = 250
 
 
 class BlockLength(NamedTuple):
@@ -225,29 +226,16 @@ def _bootstrap(
         return theta, float("nan"), float("nan"), float("nan"), 1.0
     influence = np.sum(sign * (total - mean * count) / (mean * count.mean(axis=1, keepdims=True)), axis=0)
     chosen = block_length(influence)
-    length = max(1, round(chosen.circular))
-    blocks = -(-bins // length)
-    ends = np.full(blocks, length)
-    ends[-1] = bins - length * (blocks - 1)
+    length = max(1, round(chosen.circular), bins // MOST_BLOCKS)
     variance = chosen.variance / bins / (1.0 - chosen.lags / bins)
-
-    sums = [
+    around = [
         np.cumsum(np.concatenate([np.zeros((len(x), 1)), x, x[:, :length]], axis=1), axis=1) for x in (total, count)
     ]
-    random = np.random.default_rng(seed)
-    ratios = []
-    for first in range(0, DRAWS, _DRAWS_AT_ONCE):
-        start = random.integers(0, bins, (min(_DRAWS_AT_ONCE, DRAWS - first), blocks))
-        drawn, weight = (x[:, start + ends] - x[:, start] for x in sums)
-        whole = weight.sum(axis=2)
-        again = drawn.sum(axis=2) / np.maximum(whole, 1.0)
-        again = np.maximum(again, 1e-12 * mean)
-        part = (drawn - again[:, :, None] * weight) / (again * whole / bins)[:, :, None]
-        spread = np.sqrt(np.sum(np.sum(sign[:, :, None] * part, axis=0) ** 2, axis=1)) / bins
-        shift = np.sum(sign * np.log(again), axis=0) - theta
-        ratios.append(shift[spread > 0.0] / spread[spread > 0.0])
+    start = np.random.default_rng(seed).integers(0, bins, (DRAWS, -(-bins // length)))
+    shifts = studentised_shifts(around[0], around[1], np.array(signs), start, length, bins)
+    shifts = shifts[np.isfinite(shifts)]
     tail = 0.5 * (1.0 - level)
-    below, above = np.quantile(np.concatenate(ratios), [tail, 1.0 - tail]) if variance > 0.0 else (0.0, 0.0)
+    below, above = np.quantile(shifts, [tail, 1.0 - tail]) if len(shifts) else (0.0, 0.0)
     laps_variance, laps_half = _between_laps(runs, length, level)
     return (
         theta,

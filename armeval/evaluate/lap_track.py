@@ -90,7 +90,9 @@ class LapTrack:
     @property
     def tracking(self) -> FloatArray:
         """Shape (k,) [m]. Norm of the tracking error: tip minus target at the same instant."""
-        return np.asarray(np.linalg.norm(self.tip - self.target_tip, axis=1))
+        from armeval.kernels.distances import distances
+
+        return distances(self.tip, self.target_tip)
 
     @property
     def duration(self) -> float:

@@ -8,6 +8,7 @@ from armeval.errors import Finding, InputError
 from armeval.evaluate.align import Alignment, align_by_targets, align_on_path, align_to_plan, path_tolerance
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.tracks import track
+from armeval.kernels.distances import farthest
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from armeval.model.trajectory import Trajectory
@@ -79,17 +80,12 @@ def _track(arm: Arm, trajectory: Trajectory, run: Run, log: JointLog, alignment:
 def _targets_on_path(lap: LapTrack, trajectory: Trajectory) -> tuple[Finding, ...]:
     """Check that logged targets follow the planned path from its start to its end."""
     tolerance = path_tolerance(trajectory)
-    square = np.zeros(len(lap.arc))
-    for axis in range(3):
-        on_path = np.interp(lap.arc, trajectory.path_arc, trajectory.path[:, axis])
-        square += (lap.target_tip[:, axis] - on_path) ** 2
+    distance, which = farthest(lap.target_tip, lap.arc, trajectory.path, trajectory.path_arc)
     place = f"lap {lap.lap}"
-    farthest = float(np.sqrt(square.max()))
-    if farthest > _NOT_THE_PATH * tolerance:
-        at = float(lap.time[int(np.argmax(square))])
+    if distance > _NOT_THE_PATH * tolerance:
         raise InputError(
-            f"the logged targets do not follow the planned path: they stray up to {1e3 * farthest:.4g} mm from it, "
-            f"the farthest at {at:.6g} s",
+            f"the logged targets do not follow the planned path: they stray up to {1e3 * distance:.4g} mm from it, "
+            f"the farthest at {lap.time[which]:.6g} s",
             "check the trial's path, and unit and order of the target columns; give several laps in one file a `lap` "
             "column",
             file=lap.file or "",
@@ -104,11 +100,11 @@ def _targets_on_path(lap: LapTrack, trajectory: Trajectory) -> tuple[Finding, ..
             file=lap.file or "",
             place=place,
         )
-    if farthest > tolerance:
+    if distance > tolerance:
         return (
             Finding(
                 "warning",
-                f"the logged targets lie up to {1e3 * farthest:.3g} mm off the planned path",
+                f"the logged targets lie up to {1e3 * distance:.3g} mm off the planned path",
                 "check that the trial's path is the one that was run",
                 lap.file or "",
                 place,

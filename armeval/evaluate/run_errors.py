@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -11,7 +13,6 @@ from armeval.evaluate.document import JsonValue
 from armeval.evaluate.iso_9283 import PathCriteria, path_criteria
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.summary import ErrorSummary, summarise
-from armeval.evaluate.threads import spread
 from armeval.model.trajectory import Trajectory
 
 if TYPE_CHECKING:
@@ -99,37 +100,41 @@ def run_errors(tracks: Sequence[LapTrack], trajectory: Trajectory | None = None)
     trajectory
         The plan; with it errors are also told along and across the path, by stretch and the standard's way.
     """
-    tracking = [track.tracking for track in tracks]
-    deviation = [track.deviation for track in tracks]
-    sums = [lap_sums(track, trajectory) for track in tracks] if trajectory is not None else []
-    parts = [[error] for error in (*tracking, *deviation)]
-    # Of a single lap the lap's figures are the run's.
-    if len(tracks) > 1:
-        parts += [tracking, deviation]
-    summaries = spread(summarise, parts)
+    with ThreadPoolExecutor(os.cpu_count()) as pool:
+        standard = pool.submit(path_criteria, tracks, trajectory) if trajectory is not None else None
+        sums = [pool.submit(lap_sums, track, trajectory) for track in tracks] if trajectory is not None else []
+        tracking = list(pool.map(lambda track: track.tracking, tracks))
+        deviation = [track.deviation for track in tracks]
+        of_laps = [[pool.submit(summarise, [error]) for error in errors] for errors in (tracking, deviation)]
+        # Of a single lap the lap's figures are the run's.
+        of_run = [
+            found[0] if len(tracks) == 1 else pool.submit(summarise, errors)
+            for found, errors in zip(of_laps, (tracking, deviation), strict=True)
+        ]
+    found_sums = [future.result() for future in sums]
     laps = tuple(
         LapErrors(
             lap=track.lap,
             file=track.file,
             duration=track.duration,
             time_offset=track.time_offset,
-            tracking=summaries[i],
-            deviation=summaries[len(tracks) + i],
-            components=components(sums[i]) if sums else None,
+            tracking=of_laps[0][i].result(),
+            deviation=of_laps[1][i].result(),
+            components=components(found_sums[i]) if found_sums else None,
         )
         for i, track in enumerate(tracks)
     )
-    joined = over_laps(sums) if sums else None
+    joined = over_laps(found_sums) if found_sums else None
     return RunErrors(
         name=tracks[0].run,
         compensated=tracks[0].compensated,
-        tracking=summaries[-2],
-        deviation=summaries[-1],
+        tracking=of_run[0].result(),
+        deviation=of_run[1].result(),
         laps=laps,
         tracks=tuple(tracks),
         components=components(joined) if joined is not None else None,
         stretches=stretches(joined, trajectory.corners) if joined is not None and trajectory is not None else (),
-        iso_9283=path_criteria(tracks, trajectory) if trajectory is not None else None,
+        iso_9283=standard.result() if standard is not None else None,
     )
 
 
