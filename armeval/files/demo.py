@@ -6,7 +6,6 @@ import os
 import shutil
 from pathlib import Path
 
-import armeval
 from armeval.files.atomic import write_folder
 from armeval.files.new_trial import robot_folder
 
@@ -15,7 +14,7 @@ _ROBOT = "tern"
 
 def demo_folder() -> Path:
     """Give the folder of the demo inside the package: trial, path and logs, without the arm."""
-    return Path(armeval.__file__).parent / "demo"
+    return Path(__file__).parents[1] / "demo"
 
 
 def write_demo(directory: str | os.PathLike[str], *, force: bool = False) -> Path:
