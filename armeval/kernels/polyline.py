@@ -88,7 +88,7 @@ def nearest_near(
                 continue
             d, s = _nearest_on_segment(path, arc, i, low, high, points[j])
             if d < best - _TIE or (d < best + _TIE and abs(s - middle) < abs(best_s - middle)):
-                best, best_s = d, s
+                best, best_s = min(best, d), s
             # The distance to the point falls by no more than the way along the path.
             unseen = arc[i + 1] + (d - best) - _TIE
         lag = middle - best_s
