@@ -6,7 +6,7 @@ import re
 from collections.abc import Iterator
 from typing import Protocol
 
-_BLOCK = 1 << 22
+BLOCK = 1 << 22
 _SAYS_NOTHING = re.compile(rb"(?:(?<=[\r\n])|\A)[ \t]*(?:#[^\r\n]*)?(?:\r\n|\r|\n|\Z)")
 
 
@@ -20,7 +20,7 @@ class Stream(Protocol):
 def whole_lines(stream: Stream) -> Iterator[bytes]:
     """Give the rest of the stream in blocks that end where a line ends."""
     held = b""
-    while block := bytes(stream.read(_BLOCK)):
+    while block := bytes(stream.read(BLOCK)):
         block = held + block
         # A carriage return at the very end may be half of a line end.
         cut = max(block.rfind(b"\n"), block.rfind(b"\r", 0, len(block) - 1)) + 1
