@@ -109,12 +109,22 @@ def in_this_lap(drive: PlantDrive, rng: np.random.Generator) -> PlantDrive:
     )
 
 
-def run_laps(planned: Plan, compensated: bool, seed: int) -> list[PlantLap]:
+def demo_plan() -> Plan:
+    return plan(
+        demo_plant(demo_drives()),
+        harbour.tip_points() * 1e-3,
+        np.array(shipped.rest_angles("tern")),
+        feed=FEED,
+        acceleration=ACCELERATION,
+    )
+
+
+def run_laps(planned: Plan, compensated: bool, seed: int, count: int = LAPS) -> list[PlantLap]:
     """The laps of one run, one after the other on one clock."""
     rng = np.random.default_rng(seed)
     laps: list[PlantLap] = []
     start, clock = planned.angle[0], 0.0
-    for _ in range(LAPS):
+    for _ in range(count):
         plant = demo_plant([in_this_lap(drive, rng) for drive in demo_drives()])
         (lap,) = plant.run(
             planned.angle,
@@ -187,7 +197,7 @@ def main() -> None:
     points = millimetres * 1e-3
     write_path(millimetres)
     plant = demo_plant(demo_drives())
-    planned = plan(plant, points, np.array(shipped.rest_angles("tern")), feed=FEED, acceleration=ACCELERATION)
+    planned = demo_plan()
     truth = {
         "path_m": float(arc_lengths(points)[-1]),
         "lap_s": float(planned.time[-1]),

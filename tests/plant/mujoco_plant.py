@@ -10,9 +10,7 @@ ones used here it creeps at some 1e-6 rad/s (MuJoCo manual, "Friction loss").
 
 from __future__ import annotations
 
-import math
 import re
-from collections import deque
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -20,76 +18,14 @@ import mujoco
 import numpy as np
 import numpy.typing as npt
 
+from tests.plant.firmware import Firmware
+from tests.plant.plant_drive import PlantDrive, PlantServo
+
+__all__ = ["STANDARD_GRAVITY", "Plant", "PlantDrive", "PlantLap", "PlantServo"]
+
 FloatArray = npt.NDArray[np.float64]
-IntArray = npt.NDArray[np.int64]
 
 STANDARD_GRAVITY = 9.80665
-
-
-@dataclass(frozen=True, eq=False)
-class PlantDrive:
-    """One joint's drive: the truth of motor, friction and encoder, and what its firmware is told.
-
-    Values are at the joint unless said to be on the motor side; the motor's true angle is
-    ``gear_ratio * q + index_offset``.
-
-    Attributes
-    ----------
-    harmonics
-        True cogging torque on the rotor: (order, amplitude [N m], phase [rad]) of amplitude*sin(order*angle+phase).
-    stiffness, damping
-        Gains of ``joint_pd``; ``tip_impedance`` does not use them.
-    encoder_jitter
-        One sigma of a reading [counts] before it is rounded to a whole count.
-    encoder_counts
-        0 for an ideal encoder, whose "counts" are then the joint angle itself.
-    table
-        What the firmware stored of the cogging torque, motor side [N m], entry k at 2 pi k / bins; None: nothing.
-    table_offset
-        Where the firmware believes the index to be, motor side [rad]; None: at the true ``index_offset``.
-    dead_time_torque
-        Torque [N m] lost against the sign of the commanded one.
-    """
-
-    harmonics: tuple[tuple[int, float, float], ...] = ()
-    gear_ratio: float = 1.0
-    index_offset: float = 0.0
-    rotor_inertia: float = 0.0
-    coulomb_friction: float = 0.0
-    static_friction: float | None = None
-    stribeck_speed: float = 0.05
-    viscous_friction: float = 0.0
-    stiffness: float = 0.0
-    damping: float = 0.0
-    torque_limit: float = math.inf
-    torque_step: float = 0.0
-    dead_time_torque: float = 0.0
-    encoder_counts: float = 0.0
-    encoder_on: str = "motor"
-    encoder_jitter: float = 0.0
-    table: FloatArray | None = None
-    table_offset: float | None = None
-
-    @property
-    def resolution(self) -> float:
-        """Joint angle of one count [rad], with the gear's sign; 1 for an ideal encoder."""
-        if self.encoder_counts == 0.0:
-            return 1.0
-        return 2.0 * math.pi / self.encoder_counts / (self.gear_ratio if self.encoder_on == "motor" else 1.0)
-
-
-@dataclass(frozen=True)
-class PlantServo:
-    """The firmware's loop over all joints; stiffness and damping at the tip in N/m and N s/m."""
-
-    law: str = "joint_pd"
-    period: float = 1e-3
-    delay: float = 0.0
-    speed_cutoff: float = math.inf
-    gravity_feedforward: bool = True
-    inertia_feedforward: bool = False
-    tip_stiffness: tuple[float, float, float] = (0.0, 0.0, 0.0)
-    tip_damping: tuple[float, float, float] = (0.0, 0.0, 0.0)
 
 
 @dataclass(frozen=True, eq=False)
@@ -264,7 +200,7 @@ class Plant:
             raise ValueError("several laps need a trajectory that ends where it starts")
         data = mujoco.MjData(self.model)
         data.qpos[:] = q_target[0] if start is None else start
-        firmware = _Firmware(self, compensated, np.random.default_rng(seed))
+        firmware = Firmware(self, compensated, np.random.default_rng(seed))
         still = np.zeros(self.count)
         accelerations = np.zeros_like(q_target) if qdd_target is None else qdd_target
         recorded = []
@@ -284,90 +220,9 @@ class Plant:
         return tuple(recorded)
 
     def _tick(
-        self, data: mujoco.MjData, firmware: _Firmware, q: FloatArray, qd: FloatArray, qdd: FloatArray
+        self, data: mujoco.MjData, firmware: Firmware, q: FloatArray, qd: FloatArray, qdd: FloatArray
     ) -> tuple[FloatArray, FloatArray]:
         counts, commanded = firmware.answer(data.qpos, q, qd, qdd)
         for _ in range(self.substeps):
             self.step(data, firmware.drive_torque())
         return counts, commanded
-
-
-class _Firmware:
-    """What runs in the drives once a period: it knows encoder counts, targets, its table and its model of the arm."""
-
-    def __init__(self, plant: Plant, compensated: bool, rng: np.random.Generator) -> None:
-        drives, servo, n = plant.drives, plant.servo, plant.count
-        self.plant, self.servo, self.rng = plant, servo, rng
-        self.compensated = compensated and any(drive.table is not None for drive in drives)
-        self.resolution = np.array([drive.resolution for drive in drives])
-        self.ideal = np.array([drive.encoder_counts == 0.0 for drive in drives])
-        self.jitter = np.array([drive.encoder_jitter for drive in drives])
-        self.stiffness = np.array([drive.stiffness for drive in drives])
-        self.damping = np.array([drive.damping for drive in drives])
-        self.limit = np.array([drive.torque_limit for drive in drives])
-        self.quantum = np.array([drive.torque_step for drive in drives])
-        self.dead = np.array([drive.dead_time_torque for drive in drives])
-        self.blend = -math.expm1(-2.0 * math.pi * servo.speed_cutoff * servo.period)
-        self.seen: FloatArray | None = None
-        self.speed = np.zeros(n)
-        # Torques on their way from the loop to the motor, one a plant step; the last one is held.
-        self.delay = round(servo.delay / servo.period * plant.substeps)
-        self.queue: deque[FloatArray] = deque()
-        self.newest = np.zeros(n)
-
-    def answer(
-        self, q: FloatArray, target: FloatArray, target_speed: FloatArray, target_acceleration: FloatArray
-    ) -> tuple[FloatArray, FloatArray]:
-        """Read the encoders at the true angles ``q`` and command torques; both of shape (n,)."""
-        reading = q / self.resolution + self.jitter * self.rng.standard_normal(len(q))
-        counts = np.where(self.ideal, reading, np.rint(reading))
-        seen = counts * self.resolution
-        first = self.seen is None
-        last = seen if self.seen is None else self.seen
-        self.speed = self.speed + self.blend * ((seen - last) / self.servo.period - self.speed)
-        self.seen = seen
-        if self.servo.law == "joint_pd":
-            torque = self.stiffness * (target - seen) + self.damping * (target_speed - self.speed)
-        else:
-            torque = self._tip_impedance(seen, target, target_speed)
-        if self.servo.gravity_feedforward:
-            torque = torque + self.plant.gravity_torque(seen)
-        if self.servo.inertia_feedforward:
-            torque = torque + self.plant.inertia_torque(target, target_acceleration)
-        if self.compensated:
-            torque = torque - self._table(seen)
-        torque = np.clip(torque, -self.limit, self.limit)
-        stepped = np.where(self.quantum > 0.0, self.quantum, 1.0)
-        torque = np.where(self.quantum > 0.0, np.rint(torque / stepped) * stepped, torque)
-        self.newest = np.sign(torque) * np.maximum(np.abs(torque) - self.dead, 0.0)
-        if first:  # as if it had held the arm there before
-            self.queue.extend([self.newest] * self.delay)
-        return counts, torque
-
-    def _tip_impedance(self, seen: FloatArray, target: FloatArray, target_speed: FloatArray) -> FloatArray:
-        wanted, wanted_speed = self.plant.tip(target)[0], self.plant.jacobian(target) @ target_speed
-        jacobian = self.plant.jacobian(seen)
-        error, error_speed = wanted - self.plant.tip(seen)[0], wanted_speed - jacobian @ self.speed
-        stiffness, damping = np.array(self.servo.tip_stiffness), np.array(self.servo.tip_damping)
-        return jacobian.T @ (stiffness * error + damping * error_speed)
-
-    def _table(self, seen: FloatArray) -> FloatArray:
-        """Joint torque of the stored table at the angle seen, linear between entries."""
-        torque = np.zeros(len(seen))
-        for j, drive in enumerate(self.plant.drives):
-            if drive.table is not None:
-                offset = drive.index_offset if drive.table_offset is None else drive.table_offset
-                bins = len(drive.table)
-                place = (drive.gear_ratio * seen[j] + offset) / (2.0 * math.pi) * bins
-                below = math.floor(place)
-                part = place - below
-                low, high = drive.table[below % bins], drive.table[(below + 1) % bins]
-                torque[j] = drive.gear_ratio * ((1.0 - part) * low + part * high)
-        return torque
-
-    def drive_torque(self) -> FloatArray:
-        """Torque at the joints during the next plant step."""
-        if self.delay == 0:
-            return self.newest
-        self.queue.append(self.newest)
-        return self.queue.popleft()
