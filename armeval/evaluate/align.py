@@ -146,11 +146,14 @@ def align_on_path(log: JointLog, trajectory: Trajectory, arm: Arm) -> Alignment:
     assert log.target is not None
     first, last = _motion(log.target, 0, len(log.time))
     begin, end = _motion(log.target, *_on_path(log.target, first, last, trajectory, arm))
+    if end <= begin:
+        return Alignment(slice(first, last), 0.0)
     left_out = float(log.time[begin] - log.time[first] + log.time[last - 1] - log.time[end - 1])
     finding = Finding(
         "warning",
         f"{left_out:.4g} s of motion to or from the planned path are left out",
-        "nothing, if the arm moved to the start of the path or away from its end",
+        "nothing, if the arm moved to the start of the path or away from its end; give several laps in one file a "
+        "`lap` column",
         log.source,
         f"lap {log.lap}",
     )
@@ -167,12 +170,15 @@ def path_tolerance(trajectory: Trajectory) -> float:
 
 
 def _motion(target: FloatArray, first: int, last: int) -> tuple[int, int]:
-    """From the sample before the first change of a target to the one after the last, looked for from both ends."""
+    """From the sample before the first change of a target to the one after the last, looked for from both ends.
+
+    Begin and end are the same where the target stands still.
+    """
 
     def changes(begin: int, end: int) -> IntArray:
         return np.flatnonzero((target[begin + 1 : end] != target[begin : end - 1]).any(axis=1))
 
-    begin, end, size = first, last, 1024
+    begin, end, size = first, max(first, last), 1024
     while begin < last - 1:
         found = changes(begin, min(begin + size, last))
         if len(found):
@@ -251,16 +257,20 @@ def _on_path(target: FloatArray, first: int, last: int, trajectory: Trajectory, 
     starts, ends = edges[::2], edges[1::2]
     longest = int(np.argmax(ends - starts))
     begin, end = first + int(starts[longest]) * stride, first + (int(ends[longest]) - 1) * stride + 1
-    # Within the tolerance of its ends the path proper begins where the target is first nearest to them.
-    for_start = to_point(trajectory.path[0], slice(begin, end, stride)) <= tolerance
-    for_end = to_point(trajectory.path[-1], slice(end - 1, begin - 1 if begin else None, -stride)) <= tolerance
-    head = min(end, begin + (_leading(for_start) + 1) * stride)
-    tail = max(begin, end - (_leading(for_end) + 1) * stride)
-    nearest_start = int(np.argmin(to_point(trajectory.path[0], slice(begin, head))))
-    nearest_end = int(np.argmin(to_point(trajectory.path[-1], slice(tail, end))[::-1]))
-    return begin + nearest_start, end - nearest_end
+    # The lap proper begins where the target, within the tolerance of the path's start, is first nearest to it.
+    forward, backward = slice(begin, end, stride), slice(end - 1, begin - 1 if begin else None, -stride)
+    skipped, near = _first_row(to_point(trajectory.path[0], forward) <= tolerance)
+    head = slice(min(begin + skipped * stride, end - 1), min(begin + (skipped + near + 1) * stride, end))
+    skipped, near = _first_row(to_point(trajectory.path[-1], backward) <= tolerance)
+    tail = slice(max(end - (skipped + near + 1) * stride, begin), max(end - skipped * stride, begin + 1))
+    start = head.start + int(np.argmin(to_point(trajectory.path[0], head)))
+    return start, tail.stop - int(np.argmin(to_point(trajectory.path[-1], tail)[::-1]))
 
 
-def _leading(flags: BoolArray) -> int:
-    """How many are true before the first that is not."""
-    return len(flags) if flags.all() else int(np.argmin(flags))
+def _first_row(flags: BoolArray) -> tuple[int, int]:
+    """Where the first row of true flags begins, and how long it is; nothing of all where none is true."""
+    if not flags.any():
+        return 0, 0
+    begin = int(np.argmax(flags))
+    rest = flags[begin:]
+    return begin, len(rest) if rest.all() else int(np.argmin(rest))

@@ -32,6 +32,7 @@ METHOD = (
 BINS = 1000
 DRAWS = 999
 MOST_BLOCKS = 250
+_LAPS_DIFFER = 0.99
 
 
 class BlockLength(NamedTuple):
@@ -265,7 +266,7 @@ def _between_laps(runs: Sequence[_Binned], length: int, level: float) -> tuple[f
         within = influence[:, : blocks * length].reshape(laps, blocks, length).sum(axis=2) / bins
         explained = float(np.sum(within**2)) / (laps - 1)
         found = float(np.var(each / mean, ddof=1))
-        if found > explained * stats.f.ppf(0.95, laps - 1, (laps - 1) * (blocks - 1)):
+        if found > explained * stats.f.ppf(_LAPS_DIFFER, laps - 1, (laps - 1) * (blocks - 1)):
             excess = (found - explained) / laps
             variance += excess
             half = float(np.hypot(half, stats.t.ppf(0.5 * (1.0 + level), laps - 1) * np.sqrt(excess)))
