@@ -101,15 +101,29 @@ class CogOrder:
     kind: OrderKind = "unknown"
 
 
+def significance_ratio(orders_tried: int, orders_known: float, false_alarm: float = FALSE_ALARM) -> float:
+    """Power over mean noise power that noise alone lets any of the orders pass with the chance ``false_alarm``.
+
+    Noise that is alike at all angles gives every order the same mean power and each an exponential distribution of its
+    own. The power of an order over the mean of m others then follows F(2, 2m), whose tail is (1 + x / m)^-m.
+
+    Parameters
+    ----------
+    orders_tried
+        How many orders have the chance to pass.
+    orders_known
+        The m orders that the noise is known from; half the degrees of freedom of a variance.
+    """
+    return math.expm1(min(math.log(orders_tried / false_alarm) / orders_known, 700.0)) * orders_known
+
+
 def significant_orders(
     coefficients: ComplexArray, *, noise_power: float = 0.0, false_alarm: float = FALSE_ALARM
 ) -> tuple[BoolArray, float]:
     """Find the orders that stand out of the noise, and the noise that they stand out of.
 
-    Noise that is alike at all angles gives every order the same mean power and each an exponential distribution of
-    its own. The power of an order over the mean of m others then follows F(2, 2m), whose tail is
-    (1 + x / m)^-m. The floor starts at the median power, from which at least half of the orders must be noise, and is
-    then the mean over the orders that are not significant, until these stay the same.
+    The floor starts at the median power, from which at least half of the orders must be noise, and is then the mean
+    over the orders that are not significant, until these stay the same.
 
     Parameters
     ----------
@@ -136,8 +150,7 @@ def significant_orders(
     floor = max(float(np.median(power)) / math.log(2.0), least)
     rest = power.size
     for _ in range(50):
-        ratio = math.expm1(math.log(power.size / false_alarm) / rest) * rest
-        above = power > ratio * floor
+        above = power > significance_ratio(power.size, rest, false_alarm) * floor
         if np.array_equal(above, significant[1:]):
             break
         significant[1:] = above

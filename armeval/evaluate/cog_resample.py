@@ -13,74 +13,21 @@ import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.errors import Finding, InputError
+from armeval.evaluate.cog_doubts import (
+    doubt_the_bandwidth,
+    doubt_the_lag,
+    doubt_the_mean,
+    doubt_the_sign_of_friction,
+    refuse_a_hidden_order,
+    refuse_a_part_of_a_turn,
+)
 from armeval.evaluate.cog_fit import Samples, entry_variance, fit, merged, on_even_angles, supported_bandwidth
-from armeval.evaluate.cog_orders import expected_orders, significant_orders
-from armeval.kernels.harmonics import ComplexArray, harmonic_series, harmonic_sums
+from armeval.evaluate.cog_orders import significant_orders
+from armeval.kernels.harmonics import ComplexArray
 from armeval.model.cogmap import CogMap, CogQuantity
-from armeval.units import angle_text, torque_text
-
-_TURN = 2.0 * np.pi
-
-_LEAST_COVERED = 0.75
-"""Share of the turn that the angles must cover whatever the orders."""
-
-_WORTH_A_REFUSAL = 0.05
-"""An order hidden by a gap matters where it has this share of the strongest order's amplitude."""
 
 _ROUNDING = 1e-9
 """Noise below this share of the torque is rounding."""
-
-
-def _degrees(low: float, high: float) -> str:
-    return f"from {angle_text(low, 4)} to {angle_text(math.fmod(high, _TURN), 4)}"
-
-
-def _refuse_a_part_of_a_turn(samples: Samples, source: str, place: str) -> None:
-    """Raise where the angles leave out more than a quarter of the turn."""
-    gap = samples.gap
-    covered = 1.0 - float(gap.max()) / _TURN
-    if covered >= _LEAST_COVERED:
-        return
-    after = int(np.argmax(gap))
-    start = float(samples.angle[(after + 1) % samples.angle.size])
-    parts = {0.25: "a quarter of a turn", 1 / 3: "a third of a turn", 0.5: "half a turn", 2 / 3: "two thirds of a turn"}
-    said = next((f", about {word}" for part, word in parts.items() if abs(covered - part) < 0.04), "")
-    raise InputError(
-        f"the angles cover only {angle_text(covered * _TURN)} of the motor's turn{said} "
-        f"({_degrees(start, start + covered * _TURN)})",
-        "measure a whole motor turn; turn angles behind a gear, or electrical degrees, into motor angles first",
-        file=source,
-        place=place,
-    )
-
-
-def _refuse_a_hidden_order(
-    samples: Samples, coefficients: ComplexArray, noise_power: float, size: int, source: str, place: str
-) -> None:
-    """Raise where the samples show an order of which half a period fits into their widest gap."""
-    bandwidth = coefficients.size - 1
-    highest = min(samples.angle.size // 2, (size - 1) // 2)
-    if samples.even or highest <= bandwidth:
-        return
-    left = samples.torque - harmonic_series(samples.angle, coefficients)
-    spectrum = harmonic_sums(samples.angle, left / left.size, highest)[bandwidth:]  # the fit has emptied those below
-    significant, _ = significant_orders(spectrum, noise_power=noise_power)
-    amplitude = 2.0 * np.abs(spectrum)
-    strongest = max(float(amplitude[1:].max()), 2.0 * float(np.abs(coefficients[1:]).max(initial=0.0)))
-    hidden = np.where(significant & (amplitude >= _WORTH_A_REFUSAL * strongest), amplitude, 0.0)
-    if not hidden.any():
-        return
-    order = bandwidth + int(np.argmax(hidden))
-    gap = samples.gap
-    after = int(np.argmax(gap))
-    raise InputError(
-        f"the widest gap between measured angles is {angle_text(float(gap[after]))} "
-        f"({_degrees(float(samples.angle[after]), float(samples.angle[after] + gap[after]))}), wider than half the "
-        f"period ({angle_text(np.pi / order)}) of order {order}, which the data show",
-        f"measure an angle at least every {angle_text(np.pi / order)}",
-        file=source,
-        place=place,
-    )
 
 
 def resample(
@@ -134,17 +81,15 @@ def resample(
     bandwidth = min(supported_bandwidth(samples, size) for _, samples in sides)
     fits = []
     for place, samples in sides:
-        _refuse_a_part_of_a_turn(samples, source, place)
+        refuse_a_part_of_a_turn(samples, source, place)
         coefficients = fit(samples, min(supported_bandwidth(samples, size), size // 2))
-        variance = entry_variance(samples, coefficients.size - 1)
-        floor = 0.0 if variance is None else variance / (2.0 * coefficients.size - 1.0)
-        _refuse_a_hidden_order(samples, coefficients, floor, size, source, place)
+        refuse_a_hidden_order(samples, coefficients, size, source, place)
         fits.append(coefficients[: bandwidth + 1])
     mean = fits[0] if len(fits) == 1 else 0.5 * (fits[0] + fits[1])
     repeats = [entry_variance(samples, bandwidth) for _, samples in sides]
     noise, noise_from = _noise(mean, repeats)
     sparsest = min((samples for _, samples in sides), key=lambda samples: samples.angle.size)
-    findings += _unsupported(mean, sparsest, bandwidth, slots, poles, source)
+    findings += doubt_the_bandwidth(mean, sparsest, bandwidth, slots, poles, source)
 
     friction = ripple = lag = None
     if len(fits) == 2:
@@ -152,11 +97,11 @@ def resample(
         friction, lag = float(half[0].real), _direction_lag(fits[0], fits[1], mean, noise)
         ripple = on_even_angles(half, size)
         if friction < 0.0:
-            findings += _reversed(friction, noise, source)
+            findings += doubt_the_sign_of_friction(friction, noise, source)
             friction, ripple = abs(friction), -ripple
-        findings += _lagging(mean, lag, source)
+        findings += doubt_the_lag(mean, lag, source)
     else:
-        findings += _one_direction(mean, noise, len(sparsest.angle), source)
+        findings += doubt_the_mean(mean, noise, len(sparsest.angle), source)
 
     removed = float(mean[0].real)
     mean[0] = 0.0
@@ -235,7 +180,7 @@ def _noise(mean: ComplexArray, repeats: list[float | None]) -> tuple[float, Lite
 
 
 def _direction_lag(up: ComplexArray, down: ComplexArray, mean: ComplexArray, noise: float) -> float:
-    """Angle by which each direction trails the mean, from the phases between them, stronger orders counting more."""
+    """Angle by which each direction is ahead of the mean, from the phases between them; strong orders count more."""
     significant, _ = significant_orders(mean, noise_power=noise**2 / (2.0 * max(mean.size - 1, 1)))
     order = np.flatnonzero(significant)
     if order.size == 0:
@@ -243,54 +188,3 @@ def _direction_lag(up: ComplexArray, down: ComplexArray, mean: ComplexArray, noi
     weight = np.abs(mean[order]) ** 2
     turned = np.angle(down[order] * np.conj(up[order]))
     return float(np.sum(weight * order * turned) / (2.0 * np.sum(weight * order.astype(np.float64) ** 2)))
-
-
-def _reversed(friction: float, noise: float, source: str) -> list[Finding]:
-    if -friction <= 3.0 * noise:
-        return []
-    what = f"the torque on the rotor is larger on the way up, by {torque_text(-2.0 * friction)}: friction would push"
-    mend = "check the signs of `direction` and of the torque; friction is taken without its sign"
-    return [Finding("warning", what, mend, source, "column `direction`")]
-
-
-def _lagging(mean: ComplexArray, lag: float, source: str) -> list[Finding]:
-    order = 1 + int(np.argmax(np.abs(mean[1:])))
-    kept = math.cos(order * lag)
-    if kept > 0.98:
-        return []
-    what = (
-        f"the maps of the two directions are shifted by {angle_text(2.0 * abs(lag))} against each other; their mean "
-        f"shows order {order} at {kept:.3g} of its size"
-    )
-    return [Finding("warning", what, "approach each angle more slowly, or use the angle reached", source, "")]
-
-
-def _one_direction(mean: ComplexArray, noise: float, angles: int, source: str) -> list[Finding]:
-    removed, rms = abs(float(mean[0].real)), math.sqrt(2.0 * float(np.sum(np.abs(mean[1:]) ** 2)))
-    if removed <= max(3.0 * noise / math.sqrt(angles), 0.01 * rms):
-        return []
-    what = (
-        f"only one turning direction was measured; the mean of {torque_text(float(mean[0].real))} that was taken off "
-        "may be friction, a load or an offset of the sensor"
-    )
-    return [
-        Finding("warning", what, "measure both directions, with a `direction` column, to tell friction", source, "")
-    ]
-
-
-def _unsupported(
-    mean: ComplexArray, samples: Samples, bandwidth: int, slots: int | None, poles: int | None, source: str
-) -> list[Finding]:
-    """Say that the order to expect of the motor is above what the samples support, and where it then shows."""
-    order = expected_orders(slots, poles).fundamental
-    count = samples.angle.size
-    if order is None or (order <= bandwidth and count > 2 * order):
-        return []
-    gap = angle_text(float(samples.gap.max()))
-    what = f"{count} angles a turn with a widest gap of {gap} do not support order {order}"
-    alias = abs(order - count * round(order / count))
-    if samples.even and alias <= bandwidth and alias != order:
-        shown = significant_orders(mean)[0][alias] if alias else False
-        what += f"; it passes for order {alias}" + (", which stands out here" if shown else "")
-    make = f"{slots} slots and {poles} poles" if slots and poles else f"{poles} poles"
-    return [Finding("warning", what, f"{make} let expect it; measure at least {2 * order + 1} even angles", source, "")]

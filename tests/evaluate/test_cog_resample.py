@@ -236,6 +236,13 @@ def test_a_gap_wider_than_half_the_period_of_an_order_that_shows_is_refused() ->
     assert "105.1 deg to 107.6 deg" in told
 
 
+@pytest.mark.parametrize("count", [80, 100, 400])
+def test_scattered_angles_too_few_for_an_order_are_refused_by_that_order(count: int) -> None:
+    angle = np.random.default_rng(11).uniform(0.0, TURN, count)
+    with pytest.raises(InputError, match=r"order 84|cover only"):
+        mapped(angle, 0.02 * np.sin(84 * angle) + 0.001 * np.sin(3 * angle))
+
+
 def test_a_gap_narrower_than_half_that_period_is_bridged_and_reported() -> None:
     angle = np.delete(even(1024), np.arange(300, 305))
     cog_map = mapped(angle, 0.02 * np.sin(84 * angle))
