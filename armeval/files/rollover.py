@@ -12,12 +12,15 @@ from armeval.files.log_columns import LogColumns, Signal
 from armeval.files.log_samples import Samples
 from armeval.model.arm import Arm
 
+_RARE = 0.1
+
 
 def unroll(values: FloatArray, wraps: Sequence[float]) -> tuple[float, int] | None:
     """Undo the rollovers of a counter in place.
 
-    A step of more than half a range is a rollover if the values stay within one range and every such step, once the
-    range is taken off, is small: at most 1/64 of the range, or four times the largest usual step.
+    A step of more than half a range is a rollover if the values stay within one range, few steps are so large (at most
+    a tenth), and every such step, once the range is taken off, is small: at most 1/64 of the range, or four times the
+    largest usual step.
 
     Parameters
     ----------
@@ -39,7 +42,7 @@ def unroll(values: FloatArray, wraps: Sequence[float]) -> tuple[float, int] | No
     steps = np.diff(values)
     for wrap in wraps:
         passed = np.abs(steps) > 0.5 * wrap
-        if highest - lowest > wrap * (1.0 + 1e-9) or not passed.any():
+        if highest - lowest > wrap * (1.0 + 1e-9) or not 0 < passed.sum() <= _RARE * len(steps):
             continue
         usual = float(np.abs(steps, where=~passed, out=np.zeros_like(steps)).max())
         turns = -np.sign(steps[passed])

@@ -104,8 +104,8 @@ def test_where_blocks_are_cut_makes_no_difference(
 
 def test_every_fault_is_told_with_row_and_column(tmp_path: Path) -> None:
     content = (
-        "# a comment counts as a row\ntime [s],q [deg]\n0,1\n1,fast\n2,NaN\n3\n4,5,6\n5,\ninf,1\n6,1e999\n7,0x10\n8,1_0\n"
-        '9,"10\ntime [s],q [deg]\n10,1e200\n'
+        "# a comment counts as a row\ntime [s],q [deg]\n0,1\n1,fast\n2,NaN\n3\n4,5,6\n5,\ninf,1\n6,1e999\n7,0x10\n"
+        '8,1_0\n9,"10\ntime [s],q [deg]\n10,1e200\n'
     )
     told = {(fault.place, fault.what) for fault in faults(lambda: numbers(tmp_path / "t.csv", content))}
     assert told == {
