@@ -8,7 +8,7 @@ from __future__ import annotations
 import math
 import re
 from functools import cache, lru_cache
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, cast
 
 from armeval.errors import InputError
 
@@ -20,7 +20,7 @@ _NUMBER = re.compile(r"^\s*(?P<value>[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\
 
 
 @cache
-def _registry() -> UnitRegistry:
+def _registry() -> UnitRegistry[float]:
     import pint
 
     return pint.UnitRegistry(cache_folder=None)
@@ -35,7 +35,7 @@ def _root(unit: str) -> tuple[float, dict[str, float], float]:
         raise InputError(f"`{unit}` is not a unit", "write a unit such as `mm`, `deg`, `N*m`, `rad/s`") from fault
     powers = {str(name): float(power) for name, power in quantity.unit_items()}
     radians = powers.pop("radian", 0.0)
-    return float(quantity.magnitude), powers, radians
+    return cast(float, quantity.magnitude), powers, radians
 
 
 def scale(unit: str, wanted: str) -> float:
@@ -102,8 +102,7 @@ def significant(value: float, digits: int = 3) -> str:
     exponent = math.floor(math.log10(abs(value)))
     if not -4 <= exponent < 7:
         return f"{value:.{digits - 1}e}"
-    rounded = f"{value:.{max(0, digits - 1 - exponent)}f}"
-    return rounded
+    return f"{value:.{max(0, digits - 1 - exponent)}f}"
 
 
 def length_text(metres: float, digits: int = 3) -> str:

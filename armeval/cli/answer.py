@@ -22,6 +22,11 @@ Force = Annotated[bool, typer.Option("--force", help="Replace files that are the
 class Answer(Protocol):
     """What every question gives back."""
 
+    @property
+    def warnings(self) -> tuple[str, ...]:
+        """What to bear in mind."""
+        ...
+
     def to_json(self) -> str:
         """Give the JSON document as text."""
         ...
@@ -35,14 +40,16 @@ class Tabular(Protocol):
         ...
 
 
-def warn(findings: Sequence[Finding]) -> None:
-    """Print what is doubtful about the input on stderr."""
-    if findings:
-        typer.echo(findings_text(findings), err=True)
-
-
 def hand_over(
-    answer: Answer, text: str, tables: Mapping[str, Tabular], *, name: str, as_json: bool, out: Path | None, force: bool
+    answer: Answer,
+    text: str,
+    tables: Mapping[str, Tabular],
+    *,
+    name: str,
+    findings: Sequence[Finding] = (),
+    as_json: bool,
+    out: Path | None,
+    force: bool,
 ) -> None:
     """Print the answer and, with a folder given, write it there, all files or none.
 
@@ -54,16 +61,23 @@ def hand_over(
         Data frames by the name of the CSV file they become.
     name
         Name of the JSON file.
+    findings
+        What was doubtful about the input; like all warnings it goes to stderr.
     as_json, out, force
         The options of the command line.
     """
-    typer.echo(answer.to_json() if as_json else text, nl=not as_json)
-    if out is None:
-        return
-    from armeval.files.atomic import write_folder
+    if findings:
+        typer.echo(findings_text(findings), err=True)
+    known = {str(finding) for finding in findings}
+    for note in answer.warnings:
+        if note not in known:
+            typer.echo(f"note: {note}", err=True)
+    if out is not None:
+        from armeval.files.atomic import write_folder
 
-    with write_folder(out, force=force) as folder:
-        (folder / f"{name}.json").write_text(answer.to_json(), encoding="utf-8")
-        for table_name, table in tables.items():
-            table.to_csv(folder / f"{table_name}.csv", index=False)
-    typer.echo(f"written to {out}", err=True)
+        with write_folder(out, force=force) as folder:
+            (folder / f"{name}.json").write_text(answer.to_json(), encoding="utf-8")
+            for table_name, table in tables.items():
+                table.to_csv(folder / f"{table_name}.csv", index=False)
+        typer.echo(f"written to {out}", err=True)
+    typer.echo(answer.to_json() if as_json else text, nl=not as_json)

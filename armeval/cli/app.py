@@ -16,7 +16,8 @@ from armeval.errors import InputError
 app = typer.Typer(
     name="armeval",
     help="How far cogging makes the tip of a small arm stray, where it sticks, and what compensation changes.",
-    epilog="Arms touch people: limit torque and speed first, keep the stop within reach. This program certifies nothing.",
+    epilog="Arms touch people: limit torque and speed first, keep the stop within reach. "
+    "This program certifies nothing.",
     no_args_is_help=True,
     add_completion=False,
     rich_markup_mode=None,
@@ -33,24 +34,25 @@ def _version(wanted: bool) -> None:
 
 @app.callback()
 def _top(
-    version: Annotated[  # noqa: ARG001  (typer acts on it)
+    version: Annotated[
         bool, typer.Option("--version", callback=_version, is_eager=True, help="Print the version and exit.")
     ] = False,
 ) -> None:
     pass
 
 
-for name, function in (
-    ("demo", demo.demo),
-    ("new", new.new),
-    ("check", check.check),
-    ("map", maps.maps),
-    ("predict", predict.predict),
-    ("measure", measure.measure),
-    ("locate", locate.locate),
-    ("report", report.report),
+# The last word is what the list of commands shows: it must fit one line.
+for name, function, question in (
+    ("demo", demo.demo, "show me: a complete made-up trial and its report"),
+    ("new", new.new, "start my own trial from a shipped robot"),
+    ("check", check.check, "are my files sound?"),
+    ("map", maps.maps, "what do these cog maps say?"),
+    ("predict", predict.predict, "how far will the tip stray, and where will it stick?"),
+    ("measure", measure.measure, "how far did it stray, according to the logs?"),
+    ("locate", locate.locate, "where did (or will) it stick, which joint, why?"),
+    ("report", report.report, "the before/after compensation report"),
 ):
-    app.command(name)(function)
+    app.command(name, short_help=question)(function)
 
 
 def run() -> None:

@@ -19,7 +19,7 @@ def locate(
     force: Force = False,
 ) -> None:
     """Where along the path did (or will) it stick, which joint, why?"""
-    from armeval.cli.answer import hand_over, warn
+    from armeval.cli.answer import hand_over
     from armeval.cli.progress_bar import ProgressBar
     from armeval.evaluate.locate_trial import has_logs, locate_trial
     from armeval.evaluate.measure import measure
@@ -34,8 +34,14 @@ def locate(
         measured = measure(trial, trajectory=plan, progress=progress) if logged else None
         replayed = predict(trial, trajectory=plan, progress=progress) if predicted or not logged else None
         location = locate_trial(trial, measured, replayed)
-    warn(trial.findings)
     tables = {"events": location.to_frame(), "regions": location.regions_frame()}
     hand_over(
-        location, location.to_text().rstrip("\n"), tables, name="locate", as_json=as_json, out=out, force=force
+        location,
+        location.to_text().rstrip("\n"),
+        tables,
+        name="locate",
+        findings=trial.findings,
+        as_json=as_json,
+        out=out,
+        force=force,
     )

@@ -26,7 +26,7 @@ def maps(
     force: Force = False,
 ) -> None:
     """What do these cog maps say? Orders, peak-to-peak, friction, detents, noise, agreement of two maps."""
-    from armeval.cli.answer import hand_over, warn
+    from armeval.cli.answer import hand_over
     from armeval.evaluate.cog_report import cog_report
     from armeval.files.maps import read_maps
 
@@ -40,9 +40,8 @@ def maps(
         second=None if other is None else {d.joint: d.cog_map for d in other.arm.drives if d.cog_map is not None},
         warnings=[str(finding) for finding in findings],
     )
-    warn(findings)
     tables = {"maps": report.to_frame(), "orders": report.orders_frame()}
-    hand_over(report, maps_text(report), tables, name="map", as_json=as_json, out=out, force=force)
+    hand_over(report, maps_text(report), tables, name="map", findings=findings, as_json=as_json, out=out, force=force)
 
 
 def maps_text(report: CogReport) -> str:
@@ -66,7 +65,16 @@ def maps_text(report: CogReport) -> str:
             ]
         )
     title = f"{report.title}: cogging on the motor side"
-    head = ["joint", "peak to peak", "rms", "friction", "noise", "detents", "left by the table", "break-even index error"]
+    head = [
+        "joint",
+        "peak to peak",
+        "rms",
+        "friction",
+        "noise",
+        "detents",
+        "left by the table",
+        "break-even index error",
+    ]
     parts = [title, text_table(head, rows)]
     rows = [
         [entry.joint, f"{order.order}", torque_text(order.amplitude), angle_text(order.phase), order.kind]
@@ -86,5 +94,4 @@ def maps_text(report: CogReport) -> str:
             for both in report.agreements
         ]
         parts.append(text_table(["joint", "shift of the second map", "correlation", "rms difference"], rows))
-    parts.extend(f"note: {said}" for said in report.warnings)
     return "\n\n".join(parts)

@@ -12,16 +12,24 @@ if TYPE_CHECKING:
 
 def measure(file: TrialFile, out: OutFolder = None, as_json: AsJson = False, force: Force = False) -> None:
     """How far did the tip stray, according to the encoder logs?"""
-    from armeval.cli.answer import hand_over, warn
+    from armeval.cli.answer import hand_over
     from armeval.cli.progress_bar import ProgressBar
     from armeval.evaluate.measure import measure as measure_trial
     from armeval.files.trial_file import read_trial
 
     with ProgressBar() as progress:
         measurement = measure_trial(read_trial(file, progress=progress), progress=progress)
-    warn(measurement.findings)
     tables = {"measured": measurement.to_frame()}
-    hand_over(measurement, measurement_text(measurement), tables, name="measure", as_json=as_json, out=out, force=force)
+    hand_over(
+        measurement,
+        measurement_text(measurement),
+        tables,
+        name="measure",
+        findings=measurement.findings,
+        as_json=as_json,
+        out=out,
+        force=force,
+    )
 
 
 def measurement_text(measurement: Measurement) -> str:
@@ -32,6 +40,5 @@ def measurement_text(measurement: Measurement) -> str:
         f"{measurement.trial}: measured tip error",
         error_table(measurement.runs),
         lap_table(measurement.runs),
-        f"note: {measurement.warnings[0]}",
     ]
     return "\n\n".join(parts)

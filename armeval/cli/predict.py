@@ -14,16 +14,14 @@ if TYPE_CHECKING:
 
 def predict(
     file: TrialFile,
-    substeps: Annotated[
-        int, typer.Option("--substeps", metavar="N", min=1, help="Time steps in a servo period.")
-    ] = 1,
+    substeps: Annotated[int, typer.Option("--substeps", metavar="N", min=1, help="Time steps in a servo period.")] = 1,
     seed: Annotated[int, typer.Option("--seed", metavar="S", help="Of the noise on the compensation table.")] = 0,
     out: OutFolder = None,
     as_json: AsJson = False,
     force: Force = False,
 ) -> None:
     """How far will the tip stray, bare and compensated, and where will it stick?"""
-    from armeval.cli.answer import hand_over, warn
+    from armeval.cli.answer import hand_over
     from armeval.cli.progress_bar import ProgressBar
     from armeval.evaluate.predict import predict as predict_trial
     from armeval.files.trial_file import read_trial
@@ -31,9 +29,17 @@ def predict(
     with ProgressBar() as progress:
         trial = read_trial(file, logs=False)
         prediction = predict_trial(trial, substeps=substeps, seed=seed, progress=progress)
-    warn(trial.findings)
     tables = {"predicted": prediction.to_frame()}
-    hand_over(prediction, prediction_text(prediction), tables, name="predict", as_json=as_json, out=out, force=force)
+    hand_over(
+        prediction,
+        prediction_text(prediction),
+        tables,
+        name="predict",
+        findings=trial.findings,
+        as_json=as_json,
+        out=out,
+        force=force,
+    )
 
 
 def prediction_text(prediction: Prediction) -> str:
@@ -49,10 +55,6 @@ def prediction_text(prediction: Prediction) -> str:
             verdict = "sticks when moved slowly" if ratio > 1.0 else "follows"
             rows.append([run.name, joint, significant(float(ratio), 3), length_text(float(at), 4), verdict])
     parts.append(text_table(["run", "joint", "largest sticking ratio", "at s", "so it"], rows))
-    rows = [
-        [run.name, length_text(run.slow.tracking_rms), f"{len(run.slow.jumps)}"]
-        for run in prediction.runs
-    ]
+    rows = [[run.name, length_text(run.slow.tracking_rms), f"{len(run.slow.jumps)}"] for run in prediction.runs]
     parts.append(text_table(["run", "rms if moved very slowly", "jumps then"], rows))
-    parts.extend(f"note: {said}" for said in prediction.warnings)
     return "\n\n".join(parts)

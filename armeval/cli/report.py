@@ -12,14 +12,15 @@ from armeval.cli.answer import AsJson, Force, TrialFile
 
 def report(
     file: TrialFile,
-    out: Annotated[
-        Path, typer.Option("--out", metavar="DIR", help="Folder for the report and its data.")
-    ] = Path("report"),
+    out: Annotated[Path, typer.Option("--out", metavar="DIR", help="Folder for the report and its data.")] = Path(
+        "report"
+    ),
     before: Annotated[
         str | None, typer.Option("--before", metavar="RUN", help="Run to compare; default: the first bare one.")
     ] = None,
     after: Annotated[
-        str | None, typer.Option("--after", metavar="RUN", help="Run to compare with; default: the first compensated one.")
+        str | None,
+        typer.Option("--after", metavar="RUN", help="Run to compare with; default: the first compensated one."),
     ] = None,
     as_json: AsJson = False,
     force: Force = False,

@@ -32,7 +32,7 @@ class ErrorAlongPath:
         covered = np.isfinite(self.laps)
         squares = np.where(covered, self.laps, 0.0) ** 2
         count = covered.sum(axis=0)
-        return np.sqrt(squares.sum(axis=0) / np.where(count > 0, count, np.nan))
+        return np.asarray(np.sqrt(squares.sum(axis=0) / np.where(count > 0, count, np.nan)))
 
     @property
     def low(self) -> FloatArray:

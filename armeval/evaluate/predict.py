@@ -7,7 +7,6 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
-
 from armeval.errors import InputError
 from armeval.evaluate.cause import Counterfactual, Removable
 from armeval.evaluate.document import JsonValue, as_text, document
@@ -246,5 +245,3 @@ def _doubts(trial: Trial, runs: list[PredictedRun]) -> list[str]:
                     f"run {run.name}: the torque of joint {joint} is at its limit for {100.0 * share:.1f} % of the time"
                 )
     return doubts
-
-
