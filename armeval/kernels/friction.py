@@ -117,8 +117,8 @@ def _guess_holds(joints: Records) -> bool:
         high = where(state == 2.0, LARGEST, high)
         value = where(slides, x, load)
         slack = where(slides, 0.0, ROUNDING * size)
-        # asked so that a value that is not a number fits nowhere
-        fits = (value >= low - slack) & (value <= high + slack)
+        # asked so that a value that is not a number, or that runs away, fits nowhere
+        fits = (value >= low - slack) & (value <= high + slack) & (abs(x) < LARGEST)
         moved = where(value > high, state + 1.0, state - 1.0)
         moved = where(moved > 2.0, 2.0, where(moved < -2.0, -2.0, moved))
         joint["state"] = where(fits, state, where(untouched, moved, state))
