@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import numpy as np
 
+from armeval.evaluate.lap_track import LapTrack
+from armeval.evaluate.tracks import track
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain
 from armeval.model.drive import Drive
@@ -61,3 +63,25 @@ def trial_of(arm: Arm, trajectory: Trajectory, **runs: tuple[JointLog, ...]) -> 
         path=PlannedPath(trajectory.tip, time=trajectory.time),
         runs=tuple(Run(name, name.startswith("compensated"), laps) for name, laps in runs.items()),
     )
+
+
+def lap_of(trajectory: Trajectory, tip: np.ndarray, *, lap: int = 1, run: str = "bare") -> LapTrack:
+    """A lap whose tip is known at every servo period."""
+    return track(
+        slides(),
+        trajectory,
+        run=run,
+        compensated=run.startswith("compensated"),
+        source="log",
+        lap=lap,
+        file=f"{run}-{lap}.csv",
+        time=trajectory.time,
+        angle=np.asarray(tip),
+        target=trajectory.joint,
+        arc=trajectory.arc,
+    )
+
+
+def delayed(trajectory: Trajectory, delay: float) -> np.ndarray:
+    """Tip of an arm that does exactly what it is told, too late."""
+    return np.column_stack([np.interp(trajectory.time - delay, trajectory.time, column) for column in trajectory.tip.T])

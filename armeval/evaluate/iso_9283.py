@@ -37,7 +37,8 @@ class PathCriteria:
     Attributes
     ----------
     laps, planes
-        How many there are; each stretch of path has its share of planes, at least one, none at a corner.
+        How many there are; each stretch of path has its share of planes, at least one, none at a corner. A plane that
+        not every lap reached is not counted.
     accuracy, repeatability
         AT_p and RT_p [m]; RT_p needs two laps, else NaN.
     speed, speed_planes
@@ -120,18 +121,19 @@ def path_criteria(tracks: Sequence[LapTrack], trajectory: Trajectory, *, planes:
     """
     at = plane_places(trajectory.corners, planes)
     command, direction = points_on(trajectory, at)
-    crossings, progress, passed = [], [], []
+    crossings, attained, asked = [], [], []
     for track in tracks:
         own = track.arc - track.lag
         point, when = plane_crossings(track, own, at, command, direction)
         crossings.append(point)
-        progress.append(_speeds(track.time, own, when))
-        passed.append(_speeds(track.time, track.arc, np.interp(at, track.arc, track.time)))
-    accuracy, repeatability = accuracy_and_repeatability(np.array(crossings), command)
-    commanded = np.mean(passed, axis=0)
+        attained.append(_speeds(track.time, own, when))
+        asked.append(_speeds(track.time, track.arc, np.interp(at, track.arc, track.time)))
+    reached = np.isfinite(attained).all(axis=0)
+    accuracy, repeatability = accuracy_and_repeatability(np.array(crossings)[:, reached], command[reached])
+    commanded = np.mean(asked, axis=0)
     speed = float(commanded.max())
-    constant = commanded >= _CONSTANT * speed
-    AV, RV, FV = velocity_criteria(np.array(progress)[:, constant], float(commanded[constant].mean()))
+    constant = reached & (commanded >= _CONSTANT * speed)
+    AV, RV, FV = velocity_criteria(np.array(attained)[:, constant], speed)
 
     inner = trajectory.corners[1:-1]
     beyond = _beyond(trajectory, inner)
@@ -142,7 +144,7 @@ def path_criteria(tracks: Sequence[LapTrack], trajectory: Trajectory, *, planes:
     roundings, overshoots = np.mean(np.array(passes), axis=0) if len(inner) else np.empty((2, 0))
     return PathCriteria(
         laps=len(tracks),
-        planes=len(at),
+        planes=int(reached.sum()),
         accuracy=accuracy,
         repeatability=repeatability,
         speed=speed,
@@ -173,6 +175,8 @@ def accuracy_and_repeatability(attained: FloatArray, command: FloatArray) -> tup
     command
         Shape (m, 3) [m].
     """
+    if attained.shape[1] == 0:
+        return float("nan"), float("nan")
     barycentre = attained.mean(axis=0)
     accuracy = float(np.linalg.norm(barycentre - command, axis=1).max())
     if len(attained) < 2:
@@ -197,9 +201,9 @@ def velocity_criteria(speed: FloatArray, commanded: float) -> tuple[float, float
 
     Returns
     -------
-    AV and RV as shares, FV in m/s; RV is NaN for a single lap, all are if the target never moves.
+    AV and RV as shares, FV in m/s; RV is NaN for a single lap, all are without planes or if the target never moves.
     """
-    if not commanded > 0.0:
+    if speed.shape[1] == 0 or not commanded > 0.0:
         return (float("nan"),) * 3
     of_laps = speed.mean(axis=1)
     repeatability = 3.0 * float(of_laps.std(ddof=1)) / commanded if len(speed) > 1 else float("nan")
@@ -240,14 +244,17 @@ def plane_crossings(
     Returns
     -------
     point, time
-        Shape (m, 3) [m] and (m,) [s], linear between the two samples that lie on either side.
+        Shape (m, 3) [m] and (m,) [s], linear between the two samples that lie on either side; NaN where there are none.
     """
-    after = np.clip(np.searchsorted(np.maximum.accumulate(own), at), 1, len(own) - 1)
+    found = np.searchsorted(np.maximum.accumulate(own), at)
+    after = np.clip(found, 1, len(own) - 1)
     sides = [np.sum((track.tip[j] - command) * direction, axis=1) for j in (after - 1, after)]
     span = sides[1] - sides[0]
     share = np.clip(np.where(span > 0.0, -sides[0] / np.where(span > 0.0, span, 1.0), 1.0), 0.0, 1.0)
     point = track.tip[after - 1] + share[:, None] * (track.tip[after] - track.tip[after - 1])
-    return point, track.time[after - 1] + share * (track.time[after] - track.time[after - 1])
+    time = track.time[after - 1] + share * (track.time[after] - track.time[after - 1])
+    reached = found == after
+    return np.where(reached[:, None], point, np.nan), np.where(reached, time, np.nan)
 
 
 def _largest(values: FloatArray) -> float:

@@ -2,8 +2,8 @@
 
 Politis & White 2004, Econometric Reviews 23(1), 53-70, with Patton, Politis & White 2009, 28(4), 372-375. The series
 and its values 13.635665 and 15.60894 are those of the test suite of the `arch` library (read there), itself checked
-against the authors' own program. The limit for an AR(1) series and its effective sample sizes follow from the definitions
-(derived). Chi-square factors of an RMS are textbook material.
+against the authors' own program. The limit for an AR(1) series and its effective sample sizes follow from the
+definitions (derived). Chi-square factors of an RMS are textbook material.
 """
 
 import numpy as np
