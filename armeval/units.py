@@ -33,9 +33,9 @@ def _root(unit: str) -> tuple[float, dict[str, float], float]:
         quantity = _registry().Quantity(1.0, _registry().parse_units(unit)).to_base_units()
     except Exception as fault:  # pint raises a dozen kinds; every one of them means "not a unit"
         raise InputError(f"`{unit}` is not a unit", "write a unit such as `mm`, `deg`, `N*m`, `rad/s`") from fault
-    powers = {str(name): float(power) for name, power in quantity.unit_items()}
+    powers = {str(name): cast(float, power) for name, power in quantity.unit_items()}
     radians = powers.pop("radian", 0.0)
-    return cast(float, quantity.magnitude), powers, radians
+    return quantity.magnitude, powers, radians
 
 
 def scale(unit: str, wanted: str) -> float:

@@ -32,7 +32,7 @@ def test_a_quantity_is_read_into_si(text, unit, value):
 
 @pytest.mark.parametrize("given", ["60", 60, 60.0])
 def test_a_bare_number_is_refused_and_shown_with_its_unit(given):
-    with pytest.raises(InputError, match="has no unit.*60.* m/s"):
+    with pytest.raises(InputError, match=r"has no unit.*60.* m/s"):
         quantity(given, "m/s")
 
 
