@@ -29,7 +29,7 @@ from armeval.kernels.compile import jit_inline
 from armeval.kernels.lanes import anywhere, where
 from armeval.kernels.records import Records
 
-MOST_PASSES = 1000
+MOST_PASSES = 100_000
 """After so many passes the solve is given up; only a value that is not a number gets there."""
 
 ROUNDING = 1e-12
