@@ -80,13 +80,14 @@ def log_columns(columns: Sequence[Column], arm: Arm, found: Findings) -> LogColu
 
 
 def _heed_foreign_joints(columns: Sequence[Column], arm: Arm, found: Findings) -> None:
-    """Warn of columns that are written like a joint's and belong to none of the arm."""
+    """Warn of columns that are written like those of a joint, under a name that is near to one of the arm's."""
     for column in columns:
         joint, dot, quantity = column.name.rpartition(".")
         if not dot or quantity not in _QUANTITIES:
             continue
-        if joint not in arm.joints:
-            mend = f"{near(joint, arm.joints)}; a column that does not belong to the arm is not read"
+        hint = near(joint, arm.joints)
+        if joint not in arm.joints and hint.startswith("did you mean"):
+            mend = f"{hint}; a column that does not belong to the arm is not read"
             found.warning(f"the arm has no joint `{joint}`", mend, place=f"column `{column.text}`")
 
 

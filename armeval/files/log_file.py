@@ -11,6 +11,7 @@ import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError
+from armeval.files.bag_table import BAG_INDEX, BAG_MAGIC, open_bag
 from armeval.files.columns import renamed
 from armeval.files.log_columns import LogColumns, log_columns
 from armeval.files.log_doubts import doubt_log
@@ -42,7 +43,7 @@ def read_joint_log(
     Parameters
     ----------
     path
-        A delimited text table, plain or gzip, or a Parquet file.
+        A delimited text table, plain or gzip; a Parquet file; a ROS 2 bag or MCAP file with joint states.
     arm
         What it was logged on.
     columns
@@ -63,7 +64,7 @@ def read_joint_log(
         With everything that is wrong in the file, by row and column.
     """
     with Reading(path, findings) as found:
-        table = open_log(path)
+        table = open_log(path, [joint for joint, slides in zip(arm.joints, arm.chain.prismatic, strict=True) if slides])
         signals = log_columns(renamed(table.columns, columns, found), arm, found)
         samples, lap = read_samples(table, signals)
         laps = [samples]
@@ -79,16 +80,27 @@ def read_joint_log(
         return tuple(logs)
 
 
-def open_log(path: str | os.PathLike[str]) -> Table:
+def open_log(path: str | os.PathLike[str], sliding: Sequence[str]) -> Table:
     """Open the table of a joint log, whatever kind of file it is in: its first bytes say which.
+
+    Parameters
+    ----------
+    path
+        The file, or the folder of a bag.
+    sliding
+        Names of the joints that slide.
 
     Raises
     ------
     InputError
         If it cannot be read, or its header cannot.
     """
+    if (Path(path) / BAG_INDEX).is_file():
+        return open_bag(path, sliding)
     with existing_file(path).open("rb") as raw:
         magic = raw.read(8)
+    if magic.startswith(BAG_MAGIC):
+        return open_bag(path, sliding)
     if magic.startswith(PARQUET_MAGIC):
         return open_parquet(path)
     return open_table(path)

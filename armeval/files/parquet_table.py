@@ -8,15 +8,13 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-import numpy as np
-
 from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError
 from armeval.files.dialect import Column
 from armeval.files.growing import GrowingArray
 from armeval.files.reading import existing_file
-from armeval.files.row_faults import note_rows
-from armeval.files.scaled import LARGEST, Scaled, scaled_rows
+from armeval.files.row_faults import no_numbers
+from armeval.files.scaled import Scaled, scaled_rows
 from armeval.units import header
 
 if TYPE_CHECKING:
@@ -60,7 +58,7 @@ class ParquetTable:
                     columns = [column.to_numpy() for column in table.columns]
                     rows = scaled_rows(columns, groups)
                     if rows is None:
-                        raise self._faults(columns, groups, done)
+                        raise no_numbers(columns, groups, self, done)
                     for array, values in zip(arrays, rows, strict=True):
                         array.append(values)
                     done += table.num_rows
@@ -80,22 +78,6 @@ class ParquetTable:
             if not (pa.types.is_integer(kind) or pa.types.is_floating(kind)):
                 found.error(f"it holds {kind}, not numbers", "store numbers", place=f"column `{text}`")
         found.raise_errors()
-
-    def _faults(self, columns: Sequence[FloatArray], groups: Sequence[Sequence[Scaled]], first: int) -> InputError:
-        """Make an error of the rows, counted from ``first``, that hold no number of a size that can be."""
-        found = Findings(self.source)
-        for numbers, column in zip(columns, (column for group in groups for column in group), strict=True):
-            with np.errstate(invalid="ignore", over="ignore"):
-                faulty = ~(np.abs(numbers * column.factor) <= LARGEST)
-            note_rows(
-                np.flatnonzero(faulty) + first,
-                self,
-                found,
-                lambda _: ("there is no finite number of a size that can be", "give a number, or remove the row"),
-                rest="rows of the kind",
-                column=self.columns[column.place].text,
-            )
-        return InputError.of(found.found)
 
     def places(self, samples: Sequence[int]) -> list[str]:
         """Say where samples stand, counted from 0: rows of Parquet count from 1."""

@@ -8,7 +8,8 @@ import numpy as np
 import numpy.typing as npt
 
 from armeval.arrays import FloatArray
-from armeval.errors import Findings
+from armeval.errors import Findings, InputError
+from armeval.files.scaled import LARGEST, Scaled
 from armeval.files.table import Table
 from armeval.units import time_text
 
@@ -80,3 +81,34 @@ def refuse_time_that_does_not_rise(
         return f"time runs back by {time_text(back)}", mend
 
     note_rows([int(rows[int(i)]) for i in later], table, found, tell, rest="rows where time does not rise")
+
+
+def no_numbers(
+    columns: Sequence[FloatArray], groups: Sequence[Sequence[Scaled]], table: Table, first: int = 0
+) -> InputError:
+    """Make an error of every row that holds no finite number of a size that can be.
+
+    Parameters
+    ----------
+    columns
+        Shape (k,) each, in the units of the table, those of the first group first.
+    groups
+        The columns that belong together, with their factors.
+    table
+        Where they come from.
+    first
+        Sample of the table that the columns begin with.
+    """
+    found = Findings(table.source)
+    for numbers, column in zip(columns, (column for group in groups for column in group), strict=True):
+        with np.errstate(invalid="ignore", over="ignore"):
+            faulty = ~(np.abs(numbers * column.factor) <= LARGEST)
+        note_rows(
+            np.flatnonzero(faulty) + first,
+            table,
+            found,
+            lambda _: ("there is no finite number of a size that can be", "give a number, or remove the row"),
+            rest="rows of the kind",
+            column=table.columns[column.place].text,
+        )
+    return InputError.of(found.found)
