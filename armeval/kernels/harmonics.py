@@ -7,6 +7,7 @@ the root of the number of orders, only about 2 s factors an angle are needed; a 
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator
 
 import numpy as np
 import numpy.typing as npt
@@ -15,8 +16,9 @@ from armeval.arrays import FloatArray
 
 ComplexArray = npt.NDArray[np.complex128]
 
-_BLOCK = 32768
-"""So many angles at a time keep the factors of a few thousand orders below 100 MB."""
+_PRODUCT = 60_000
+"""Multiplications in one matrix product: its factors stay in the processor's cache, and matrix libraries do not start
+threads for it, whose waiting for each other takes ten times as long as the work where the processor is busy."""
 
 
 def _powers(base: ComplexArray, count: int) -> ComplexArray:
@@ -26,10 +28,17 @@ def _powers(base: ComplexArray, count: int) -> ComplexArray:
     return np.multiply.accumulate(powers, axis=1)
 
 
-def _factors(angle: FloatArray, count: int) -> tuple[ComplexArray, ComplexArray]:
-    """Low and high factors of the harmonics below ``count``: shapes (k, s) and (k, p) with s p >= count."""
+def _blocks(angle: FloatArray, count: int) -> Iterator[tuple[slice, ComplexArray, ComplexArray]]:
+    """Low and high factors of the harmonics below ``count``, some angles at a time.
+
+    Yields the slice of the angles and factors of the shapes (k, s) and (k, p) with s p >= count.
+    """
     low = math.isqrt(max(count - 1, 0)) + 1
-    return _powers(np.exp(1j * angle), low), _powers(np.exp(1j * low * angle), -(-count // low))
+    high = -(-count // low)
+    rows = max(_PRODUCT // (low * high), 16)
+    for start in range(0, angle.size, rows):
+        part = slice(start, start + rows)
+        yield part, _powers(np.exp(1j * angle[part]), low), _powers(np.exp(1j * low * angle[part]), high)
 
 
 def harmonic_sums(angle: FloatArray, weight: FloatArray, highest: int) -> ComplexArray:
@@ -48,10 +57,8 @@ def harmonic_sums(angle: FloatArray, weight: FloatArray, highest: int) -> Comple
         Shape (highest + 1,), orders 0 to ``highest``.
     """
     sums = np.zeros(highest + 1, dtype=np.complex128)
-    for start in range(0, angle.size, _BLOCK):
-        low, high = _factors(angle[start : start + _BLOCK], highest + 1)
-        product = (high * weight[start : start + _BLOCK, None]).T @ low
-        sums += product.ravel()[: highest + 1]
+    for part, low, high in _blocks(angle, highest + 1):
+        sums += ((high * weight[part, None]).T @ low).ravel()[: highest + 1]
     return np.conj(sums)
 
 
@@ -73,10 +80,8 @@ def harmonic_series(angle: FloatArray, coefficients: ComplexArray) -> FloatArray
     doubled = 2.0 * coefficients
     doubled[:1] *= 0.5
     value = np.zeros(angle.size)
-    for start in range(0, angle.size, _BLOCK):
-        low, high = _factors(angle[start : start + _BLOCK], doubled.size)
+    for part, low, high in _blocks(angle, doubled.size):
         padded = np.zeros(low.shape[1] * high.shape[1], dtype=np.complex128)
         padded[: doubled.size] = doubled
-        partial = high @ padded.reshape(high.shape[1], low.shape[1])
-        value[start : start + _BLOCK] = np.einsum("kl,kl->k", partial, low).real
+        value[part] = np.einsum("kl,kl->k", high @ padded.reshape(high.shape[1], low.shape[1]), low).real
     return value
