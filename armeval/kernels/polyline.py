@@ -79,6 +79,7 @@ def nearest_near(
         near = min(max(middle - lag, low, arc[0]), high, arc[last + 1])
         guess = _segment_at(arc, near, guess)
         best, best_s = _nearest_on_segment(path, arc, guess, low, high, points[j])
+        taken = best
         begin = _segment_at(arc, low, begin)
         unseen = arc[begin]
         for i in range(begin, last + 1):
@@ -87,8 +88,9 @@ def nearest_near(
             if arc[i + 1] < unseen:
                 continue
             d, s = _nearest_on_segment(path, arc, i, low, high, points[j])
-            if d < best - _TIE or (d < best + _TIE and abs(s - middle) < abs(best_s - middle)):
-                best, best_s = min(best, d), s
+            if d < taken - _TIE or (d < best + _TIE and abs(s - middle) < abs(best_s - middle)):
+                taken, best_s = d, s
+            best = min(best, d)
             # The distance to the point falls by no more than the way along the path.
             unseen = arc[i + 1] + (d - best) - _TIE
         lag = middle - best_s

@@ -89,7 +89,7 @@ def _sort(arm: DraggedArm, q: FloatArray, direction: FloatArray, space: _Space) 
     """Let joints start that friction cannot hold, and stop those at a limit; fill in the torque left to each."""
     for i in range(q.shape[0]):
         u = space.torque[i]
-        if direction[i] == 0.0 and abs(u) > arm.static[i]:
+        if abs(u) > arm.static[i] and direction[i] * u <= 0.0:
             direction[i] = 1.0 if u > 0.0 else -1.0
         if (direction[i] > 0.0 and q[i] >= arm.chain.upper[i]) or (direction[i] < 0.0 and q[i] <= arm.chain.lower[i]):
             direction[i] = 0.0
@@ -98,18 +98,40 @@ def _sort(arm: DraggedArm, q: FloatArray, direction: FloatArray, space: _Space) 
 
 @jit
 def _newton(direction: FloatArray, space: _Space) -> bool:
-    """Fill in the move that balances the moving joints; False where their balance is not stable."""
+    """Fill in the move that balances the moving joints; False where their balance is not stable.
+
+    A joint that would have to move against its direction rests instead, since friction turns round before it does.
+    """
     n = direction.shape[0]
-    for i in range(n):
-        held = direction[i] == 0.0
-        space.move[i] = 0.0 if held else space.left[i]
-        for j in range(i):
-            space.A[i, j] = 0.0 if held or direction[j] == 0.0 else space.K[i, j]
-        space.A[i, i] = 1.0 if held else space.K[i, i]
-    if not factor_in_place(space.A):
-        return False
-    solve_in_place(space.A, space.move)
+    for _ in range(n):
+        for i in range(n):
+            held = direction[i] == 0.0
+            space.move[i] = 0.0 if held else space.left[i]
+            for j in range(i):
+                space.A[i, j] = 0.0 if held or direction[j] == 0.0 else space.K[i, j]
+            space.A[i, i] = 1.0 if held else space.K[i, i]
+        if not factor_in_place(space.A):
+            return False
+        solve_in_place(space.A, space.move)
+        consistent = True
+        for i in range(n):
+            if direction[i] * space.move[i] < 0.0:
+                direction[i] = 0.0
+                consistent = False
+        if consistent:
+            break
     return True
+
+
+@jit
+def _fall(direction: FloatArray, space: _Space) -> None:
+    """Fill in a move down the torques that are left, short enough not to swing over the stiffest motion's balance."""
+    n = direction.shape[0]
+    stiff = 0.0
+    for i in range(n):
+        stiff += abs(space.K[i, i])
+    for i in range(n):
+        space.move[i] = direction[i] * max(direction[i] * space.left[i], 0.0) / stiff
 
 
 @jit
@@ -158,25 +180,16 @@ def follow_tip_target(
         for _ in range(_MOST_MOVES):
             _evaluate(arm, q, target[s], load[s], space)
             _sort(arm, q, direction, space)
-            stiff = 0.0
-            for i in range(n):
-                for r in range(3):
-                    stiff = max(stiff, arm.spring[r] * space.J[r, i] ** 2)
             unbalanced = False
             for i in range(n):
-                unbalanced |= direction[i] * space.left[i] > _BALANCED * stiff * step[i]
+                unbalanced |= direction[i] * space.left[i] > _BALANCED * abs(space.K[i, i]) * step[i]
             if not unbalanced:
                 break
-            stable = _newton(direction, space)
-            fell[s] |= not stable
+            if not _newton(direction, space):
+                _fall(direction, space)
+                fell[s] = True
             share = 1.0
             for i in range(n):
-                if not stable:
-                    space.move[i] = max(direction[i] * space.left[i], 0.0) * direction[i] / stiff
-                elif direction[i] * space.move[i] < 0.0:
-                    # friction turns round before the joint does: it rests
-                    space.move[i] = 0.0
-                    direction[i] = 0.0
                 if abs(space.move[i]) * share > step[i]:
                     share = step[i] / abs(space.move[i])
             for i in range(n):

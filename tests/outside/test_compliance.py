@@ -1,7 +1,8 @@
 """Compliance at the tip of an arm with springs in its joints, and the stiffness that a tip spring gives to the joints.
 
-C = J K^-1 J^T (Salisbury 1980, from memory). For links of 0.2 m at 30 and 60 degrees and K = diag(20, 10) N m/rad it is
-[8.5 -2.59808; -2.59808 1.5]e-3 m/N, and torques of (0.02, 0.01) N m move the tip by (-0.5, 0.173205) mm: worked by hand.
+C = J K^-1 J^T (Salisbury 1980, from memory). For links of 0.2 m at 30 and 60 degrees and K = diag(20, 10) N m/rad it
+is [8.5 -2.59808; -2.59808 1.5]e-3 m/N, and torques of (0.02, 0.01) N m move the tip by (-0.5, 0.173205) mm:
+worked by hand.
 """
 
 import numpy as np
@@ -32,7 +33,7 @@ def test_an_unloaded_tip_spring_gives_the_joints_j_k_j():
     arm = planar_arm((0.2, 0.2), (0.5, 0.9), servo=servo)
     J = np.array([[-0.3, -0.2], [0.3 / np.sqrt(3.0), 0.0]])
     K = joint_stiffness(arm, POSE, np.zeros((1, 2)))[0]
-    assert K == pytest.approx(J.T @ np.diag([400.0, 300.0]) @ J)
+    assert pytest.approx(J.T @ np.diag([400.0, 300.0]) @ J) == K
 
 
 @given(seed=st.integers(0, 10_000), joints=st.integers(1, 6))
@@ -52,4 +53,4 @@ def test_the_stiffness_of_a_loaded_tip_spring_is_the_derivative_of_its_torque(se
         [(torque(q + step * e) - torque(q - step * e)) / (2.0 * step) for e in np.eye(chain.count)]
     )
     K = spring_stiffness(arrays, q[None], spring, (spring * pulled)[None])[0]
-    assert K == pytest.approx(-change, abs=1e-6 * max(1.0, np.abs(change).max()))
+    assert pytest.approx(-change, abs=1e-6 * max(1.0, np.abs(change).max())) == K

@@ -69,6 +69,10 @@ def test_it_jumps_once_a_pitch():
     assert np.diff(places) == pytest.approx(PITCH, abs=1e-9)
 
 
+def balance(q, target, eta):
+    return ORDER * (target - q) - eta * np.sin(ORDER * q)
+
+
 @pytest.mark.parametrize("eta", [0.3, 0.95])
 def test_below_a_ratio_of_one_it_follows_without_a_jump(eta):
     arm = arm_of(eta)
@@ -77,7 +81,7 @@ def test_below_a_ratio_of_one_it_follows_without_a_jump(eta):
     assert result.jumps == ()
     for k in range(0, len(trajectory.time), 997):
         target = trajectory.joint[k, 0]
-        truth = brentq(lambda q: ORDER * (target - q) - eta * np.sin(ORDER * q), target - 1.0, target + 1.0, xtol=1e-14)
+        truth = brentq(balance, target - 1.0, target + 1.0, args=(target, eta), xtol=1e-14)
         assert result.angle[k, 0] == pytest.approx(truth, abs=1e-9)
 
 
@@ -115,7 +119,7 @@ def test_the_sticking_ratio_is_n_t_over_k(eta, gear):
 
 
 def test_a_tip_spring_on_one_joint_jumps_as_its_joint_stiffness_says():
-    # A spring K_x at a tip of lever l turns the joint with K_x l^2, as long as the angles are small: the pitch is 4 deg.
+    # A spring K_x at a tip of lever l turns the joint with K_x l^2, as long as the angles are small: a pitch is 4 deg.
     lever, eta = 0.2, 3.0
     stiffness = ORDER * AMPLITUDE / eta / lever**2
     servo = Servo("tip_impedance", 1e-3, tip_stiffness=(stiffness, stiffness, stiffness))
