@@ -6,6 +6,7 @@ import math
 
 import numpy as np
 
+from armeval.arrays import FloatArray
 from armeval.errors import Finding, InputError
 from armeval.evaluate.cog_fit import Samples
 from armeval.evaluate.cog_orders import expected_orders, significance_ratio, significant_orders
@@ -19,6 +20,9 @@ _LEAST_COVERED = 0.75
 
 _WORTH_A_REFUSAL = 0.05
 """An order hidden by a gap matters where it has this share of the strongest order's amplitude."""
+
+_STRAY = 8.0
+"""A torque is astray that is off by so many standard deviations of what the orders leave, and by half the cogging."""
 
 
 def _degrees(low: float, high: float) -> str:
@@ -70,10 +74,47 @@ def refuse_a_hidden_order(samples: Samples, coefficients: ComplexArray, size: in
         f"the widest gap between measured angles is {angle_text(float(gap[after]))} "
         f"({_degrees(float(samples.angle[after]), float(samples.angle[after] + gap[after]))}), wider than half the "
         f"period ({angle_text(np.pi / order)}) of order {order}, which the data show",
-        f"measure an angle at least every {angle_text(np.pi / order)}",
+        f"measure an angle at least every {angle_text(np.pi / order)}"
+        + ("" if place else "; if the rows go up and back, tell the two apart with a `direction` column"),
         file=source,
         place=place,
     )
+
+
+def doubt_one_way(angle: FloatArray, source: str) -> list[Finding]:
+    """Say that rows without a direction go up a turn and back, or the other way round, in the order of the file."""
+    way = np.unwrap(angle[np.linspace(0, angle.size - 1, min(angle.size, 200)).astype(np.int64)])
+    for rising in (way, -way):
+        turn = int(np.argmax(rising))
+        legs = np.diff(rising[: turn + 1]), -np.diff(rising[turn:])
+        if all(leg.sum() > np.pi and np.mean(leg > 0.0) > 0.9 for leg in legs):
+            what = "the rows go over the turn and back, but there is no `direction`: friction counts as noise"
+            return [
+                Finding(
+                    "warning", what, "add a `direction` column, 1 where the angle rose and -1 where it fell", source
+                )
+            ]
+    return []
+
+
+def doubt_strays(samples: Samples, coefficients: ComplexArray, source: str, place: str) -> list[Finding]:
+    """Point at the torque that is farthest from what the orders make it, where it is too far to be noise."""
+    significant, _ = significant_orders(coefficients)
+    significant[0] = True
+    made = harmonic_series(samples.angle, np.where(significant, coefficients, 0.0))
+    off = np.abs(samples.torque - made)
+    least = max(_STRAY * 1.4826 * float(np.median(off)), 0.5 * float(np.ptp(made)))
+    astray = np.flatnonzero(off > max(least, 1e-9 * float(np.abs(samples.torque).max())))
+    if astray.size == 0:
+        return []
+    worst = int(astray[np.argmax(off[astray])])
+    what = (
+        f"the torque at {angle_text(float(samples.angle[worst]), 4)} is {torque_text(float(samples.torque[worst]))}, "
+        f"{torque_text(float(off[worst]))} off what the map's orders make it"
+    )
+    if astray.size > 1:
+        what += f"; {astray.size} angles are astray like that"
+    return [Finding("warning", what, "measure there again, or leave it out", source, place)]
 
 
 def doubt_the_sign_of_friction(friction: float, noise: float, source: str) -> list[Finding]:

@@ -14,6 +14,8 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.errors import Finding, InputError
 from armeval.evaluate.cog_doubts import (
+    doubt_one_way,
+    doubt_strays,
     doubt_the_bandwidth,
     doubt_the_lag,
     doubt_the_mean,
@@ -77,13 +79,14 @@ def resample(
     torque = np.asarray(torque, dtype=np.float64)
     _refuse_what_is_no_number(angle, torque, direction, source)
     sides = _by_direction(angle, torque, direction, source)
-    findings: list[Finding] = []
+    findings = doubt_one_way(angle, source) if direction is None else []
     bandwidth = min(supported_bandwidth(samples, size) for _, samples in sides)
     fits = []
     for place, samples in sides:
         refuse_a_part_of_a_turn(samples, source, place)
         coefficients = fit(samples, min(supported_bandwidth(samples, size), size // 2))
         refuse_a_hidden_order(samples, coefficients, size, source, place)
+        findings += doubt_strays(samples, coefficients, source, place)
         fits.append(coefficients[: bandwidth + 1])
     mean = fits[0] if len(fits) == 1 else 0.5 * (fits[0] + fits[1])
     repeats = [entry_variance(samples, bandwidth) for _, samples in sides]

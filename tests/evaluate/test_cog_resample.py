@@ -277,6 +277,50 @@ def test_enough_angles_for_the_order_to_expect_are_not_remarked_on() -> None:
     assert len(warnings(even(168), torque(168), slots=12, poles=14)) == 1
 
 
+# --- strays
+
+
+@pytest.mark.parametrize("noise", [0.0, 3e-4])
+@pytest.mark.parametrize("uneven", [0.0, 0.4])
+def test_a_torque_astray_is_pointed_at_by_its_angle(noise: float, uneven: float) -> None:
+    rng = np.random.default_rng(12)
+    angle = (np.arange(1000) + uneven * rng.uniform(-1.0, 1.0, 1000)) * TURN / 1000
+    torque = cogging(angle) + noise * rng.standard_normal(1000)
+    assert warnings(angle, torque) == []
+    torque[300] += 0.2
+    told = [finding.what for finding in warnings(angle, torque) if "off what the map's orders make it" in finding.what]
+    assert len(told) == 1
+    assert f"at {np.degrees(angle[300]):.1f} deg" in told[0]
+    torque[[500, 501]] -= 0.15
+    assert any("3 angles are astray" in finding.what for finding in warnings(angle, torque))
+
+
+def test_friction_that_nobody_told_apart_is_no_torque_astray() -> None:
+    angle = np.random.default_rng(13).uniform(0.0, TURN, 8000)
+    torque = cogging(angle) - np.repeat([0.008, -0.008], 4000)
+    assert warnings(angle, torque) == []
+
+
+# --- rows that go over the turn and back
+
+
+@pytest.mark.parametrize("first", [1.0, -1.0])
+@pytest.mark.parametrize("wrapped", [False, True])
+def test_rows_that_turn_back_without_a_direction_are_told(first: float, wrapped: bool) -> None:
+    angle = first * np.concatenate([even(720, 1.0), even(720, 1.0)[::-1]])
+    torque = cogging(angle) - first * np.repeat([0.003, -0.003], 720)
+    findings = warnings(np.mod(angle, TURN) if wrapped else angle, torque)
+    assert ["over the turn and back" in finding.what for finding in findings] == [True]
+    assert warnings(angle, torque, first * np.repeat([1.0, -1.0], 720)) == []
+
+
+def test_rows_that_go_one_way_or_any_way_are_not_taken_for_rows_that_turn_back() -> None:
+    for angle in (even(1440), -even(1440), np.linspace(0.0, 3 * TURN, 1440, endpoint=False)):
+        assert warnings(angle, cogging(angle)) == []
+        shuffled = np.random.default_rng(14).permutation(angle)
+        assert warnings(shuffled, cogging(shuffled)) == []
+
+
 # --- bad input
 
 
