@@ -38,8 +38,8 @@ def net_cogging(
     Returns
     -------
     n tables for :func:`armeval.kernels.periodic.periodic_value`, each of shape (m, 2): torque [N m] and slope
-    [N m/rad] over the motor's mechanical angle. A table without interpolation jumps from bin to bin; its slope is
-    taken over one bin.
+    [N m/rad] over the motor's mechanical angle. A table without interpolation jumps from bin to bin; here the
+    jump is spread over a sixteenth of a bin, and the slope is taken over a whole one.
     """
     rng = np.random.default_rng(seed)
     table_law = Compensation() if compensation is None else compensation
