@@ -95,8 +95,8 @@ def merged(angle: FloatArray, torque: FloatArray) -> Samples:
 def _starts(wrapped: FloatArray) -> BoolArray:
     """Say which of the sorted angles begin a new group of repeats; a dense row of angles is cut into short groups."""
     step = np.diff(wrapped, prepend=-np.inf)
-    block = np.floor(wrapped / (16.0 * _SAME_ANGLE))
-    return (step > _SAME_ANGLE) | ((np.diff(block, prepend=-1.0) > 0) & (step > 1e-3 * _SAME_ANGLE))
+    block = np.round(wrapped / (16.0 * _SAME_ANGLE))  # 0 lies amid a block
+    return (step > _SAME_ANGLE) | ((np.diff(block, prepend=block[:1]) > 0) & (step > 0.1 * _SAME_ANGLE))
 
 
 def supported_bandwidth(samples: Samples, size: int) -> int:
