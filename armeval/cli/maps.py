@@ -55,8 +55,8 @@ def maps_text(report: CogReport) -> str:
         rows.append(
             [
                 entry.joint,
-                torque_text(cog_map.peak_to_peak),
-                torque_text(cog_map.rms),
+                torque_text(entry.cogging.peak_to_peak),
+                torque_text(entry.cogging.rms),
                 "one direction only" if cog_map.friction is None else torque_text(cog_map.friction),
                 torque_text(cog_map.noise, 2),
                 f"{len(entry.detents)}",

@@ -12,7 +12,7 @@ from armeval.arrays import FloatArray
 from armeval.errors import InputError
 from armeval.evaluate.cog_agreement import MapAgreement, agreement
 from armeval.evaluate.cog_loss import CogResidual, residual
-from armeval.evaluate.cog_orders import CogOrder, detents, expected_orders, orders
+from armeval.evaluate.cog_orders import CogOrder, detents, expected_orders, orders, significant_part
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.model.arm import Arm
 from armeval.model.cogmap import CogMap
@@ -33,9 +33,11 @@ class JointMap:
     joint
         The joint's name.
     cog_map
-        The map.
+        The map as measured.
+    cogging
+        The same without its noise, which would add to the peaks.
     orders
-        The orders that stand out of its noise, largest first.
+        The orders that stand out of the noise, largest first.
     detents
         Shape (d,) [rad]. Stable rest angles.
     expected_order
@@ -46,6 +48,7 @@ class JointMap:
 
     joint: str
     cog_map: CogMap
+    cogging: CogMap
     orders: tuple[CogOrder, ...]
     detents: FloatArray
     expected_order: int | None
@@ -56,8 +59,8 @@ class JointMap:
         """The figures that have one value for the whole map, by their names in the JSON document."""
         cog_map, ripple = self.cog_map, self.cog_map.friction_ripple
         return {
-            "peak_to_peak_Nm": cog_map.peak_to_peak,
-            "rms_Nm": cog_map.rms,
+            "peak_to_peak_Nm": self.cogging.peak_to_peak,
+            "rms_Nm": self.cogging.rms,
             "friction_Nm": cog_map.friction,
             "friction_ripple_rms_Nm": None if ripple is None else float(np.std(ripple)),
             "noise_Nm": cog_map.noise,
@@ -192,6 +195,7 @@ def joint_map(drive: Drive, compensation: Compensation | None = None) -> JointMa
     return JointMap(
         joint=drive.joint,
         cog_map=drive.cog_map,
+        cogging=significant_part(drive.cog_map),
         orders=orders(drive.cog_map, slots=drive.slots, poles=drive.poles),
         detents=detents(drive.cog_map),
         expected_order=expected_orders(drive.slots, drive.poles).fundamental,

@@ -73,6 +73,14 @@ def test_the_document_says_what_the_map_says() -> None:
     assert document["agreement"] == []
 
 
+def test_noise_adds_nothing_to_the_peaks_that_are_told() -> None:
+    noisy = LIFT.torque + 1e-3 * np.random.default_rng(1).standard_normal(1024)
+    (entry,) = cog_report(arm(lift=CogMap(torque=noisy, noise=1e-3))).to_document()["maps"]
+    assert entry["peak_to_peak_Nm"] == pytest.approx(np.ptp(LIFT.torque), rel=0.01)
+    assert entry["rms_Nm"] == pytest.approx(LIFT.rms, rel=0.01)
+    assert np.ptp(noisy) > 1.05 * np.ptp(LIFT.torque)
+
+
 def test_a_map_of_one_direction_has_no_friction_in_the_document() -> None:
     (entry,) = json.loads(cog_report(arm(lift=CogMap(torque=LIFT.torque))).to_json())["maps"]
     assert entry["friction_Nm"] is None
