@@ -18,6 +18,7 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.evaluate.document import JsonValue
 from armeval.evaluate.lap_track import LapTrack
+from armeval.evaluate.path_planes import lay_planes, plane_crossings, points_on
 from armeval.kernels.stretches import corner_passes
 from armeval.model.trajectory import Trajectory
 
@@ -119,17 +120,15 @@ def path_criteria(tracks: Sequence[LapTrack], trajectory: Trajectory, *, planes:
     planes
         About how many planes to lay across the path, normal to it.
     """
-    at = plane_places(trajectory.corners, planes)
-    command, direction = points_on(trajectory, at)
+    laid = lay_planes(trajectory, planes)
     crossings, attained, asked = [], [], []
     for track in tracks:
-        own = track.arc - track.lag
-        point, when = plane_crossings(track, own, at, command, direction)
+        point, when = plane_crossings(track, laid)
         crossings.append(point)
-        attained.append(_speeds(track.time, own, when))
-        asked.append(_speeds(track.time, track.arc, np.interp(at, track.arc, track.time)))
+        attained.append(_speeds(track.time, track.tip, when, laid.direction))
+        asked.append(_speeds(track.time, track.target_tip, np.interp(laid.at, track.arc, track.time), laid.direction))
     reached = np.isfinite(attained).all(axis=0)
-    accuracy, repeatability = accuracy_and_repeatability(np.array(crossings)[:, reached], command[reached])
+    accuracy, repeatability = accuracy_and_repeatability(np.array(crossings)[:, reached], laid.point[reached])
     commanded = np.mean(asked, axis=0)
     speed = float(commanded.max())
     constant = reached & (commanded >= _CONSTANT * speed)
@@ -211,63 +210,20 @@ def velocity_criteria(speed: FloatArray, commanded: float) -> tuple[float, float
     return (float(of_laps.mean()) - commanded) / commanded, repeatability, fluctuation
 
 
-def plane_places(corners: FloatArray, planes: int) -> FloatArray:
-    """Arc lengths [m] of about so many planes: evenly within each stretch, half a spacing away from its ends."""
-    lengths = np.diff(corners)
-    shares = np.maximum(1, np.round(planes * lengths / lengths.sum())).astype(np.int64)
-    return np.concatenate(
-        [s + length * (np.arange(n) + 0.5) / n for s, length, n in zip(corners, lengths, shares, strict=False)]
-    )
-
-
-def points_on(trajectory: Trajectory, at: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Points of the path at arc lengths (m,) and its direction there, shape (m, 3) each."""
-    segment = np.clip(np.searchsorted(trajectory.path_arc, at, side="right") - 1, 0, len(trajectory.path_arc) - 2)
-    direction = np.diff(trajectory.path, axis=0)[segment] / np.diff(trajectory.path_arc)[segment, None]
-    return trajectory.path[segment] + (at - trajectory.path_arc[segment])[:, None] * direction, direction
-
-
-def plane_crossings(
-    track: LapTrack, own: FloatArray, at: FloatArray, command: FloatArray, direction: FloatArray
-) -> tuple[FloatArray, FloatArray]:
-    """Where and when a lap first crosses planes normal to the path.
-
-    Parameters
-    ----------
-    track
-        The lap, k samples.
-    own
-        Shape (k,) [m]. Arc length of the path point nearest to the tip.
-    at, command, direction
-        Arc length, point and direction of the path at each of m planes.
-
-    Returns
-    -------
-    point, time
-        Shape (m, 3) [m] and (m,) [s], linear between the two samples that lie on either side; NaN where there are none.
-    """
-    found = np.searchsorted(np.maximum.accumulate(own), at)
-    after = np.clip(found, 1, len(own) - 1)
-    sides = [np.sum((track.tip[j] - command) * direction, axis=1) for j in (after - 1, after)]
-    span = sides[1] - sides[0]
-    share = np.clip(np.where(span > 0.0, -sides[0] / np.where(span > 0.0, span, 1.0), 1.0), 0.0, 1.0)
-    point = track.tip[after - 1] + share[:, None] * (track.tip[after] - track.tip[after - 1])
-    time = track.time[after - 1] + share * (track.time[after] - track.time[after - 1])
-    reached = found == after
-    return np.where(reached[:, None], point, np.nan), np.where(reached, time, np.nan)
-
-
 def _largest(values: FloatArray) -> float:
     """Largest of the values that are known; NaN where there is none."""
     known = values[np.isfinite(values)]
     return float(known.max()) if len(known) else float("nan")
 
 
-def _speeds(time: FloatArray, arc: FloatArray, when: FloatArray) -> FloatArray:
-    """Speed along the path [m/s] at some instants, over 50 ms: the toggling of one encoder count is no speed."""
-    early = np.clip(when - 0.5 * _SPEED_WINDOW, time[0], time[-1])
-    late = np.clip(when + 0.5 * _SPEED_WINDOW, time[0], time[-1])
-    return np.asarray((np.interp(late, time, arc) - np.interp(early, time, arc)) / (late - early))
+def _speeds(time: FloatArray, tip: FloatArray, when: FloatArray, direction: FloatArray) -> FloatArray:
+    """Speed (m,) [m/s] of a tip along given directions (m, 3) at some instants; NaN where there is no instant.
+
+    It is taken over 50 ms: the toggling of one encoder count is no speed.
+    """
+    ends = [np.clip(when + half, time[0], time[-1]) for half in (-0.5 * _SPEED_WINDOW, 0.5 * _SPEED_WINDOW)]
+    early, late = (np.column_stack([np.interp(at, time, column) for column in tip.T]) for at in ends)
+    return np.asarray(np.sum((late - early) * direction, axis=1) / (ends[1] - ends[0]))
 
 
 def _beyond(trajectory: Trajectory, corners: FloatArray) -> FloatArray:
