@@ -75,6 +75,7 @@ def _load(path: str | os.PathLike[str], found: Findings, with_logs: bool, progre
         acceleration=table.acceleration,
         compensation=table.compensation.value(),
         sticking=table.sticking.value(),
+        hand=None if table.hand is None else table.hand.value(),
         findings=found.warnings,
         files=(
             os.fspath(path),

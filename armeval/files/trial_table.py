@@ -9,6 +9,7 @@ from pydantic import BeforeValidator, Field, StrictBool
 
 from armeval.files.quantities import Acceleration, Angle, Speed, Unit
 from armeval.files.toml_file import Table
+from armeval.model.hand import Hand
 from armeval.model.trial import Compensation, StickingRule
 
 TRIAL_SCHEMA = "armeval/trial/1"
@@ -39,6 +40,19 @@ class StickingTable(Table):
         return StickingRule(**self.model_dump())
 
 
+class HandTable(Table):
+    """``[hand]``: the hand that moves the arm."""
+
+    rendered_force: Annotated[float, Unit("N", above=0.0)] | None = Hand.rendered_force
+    gravity_feedforward: StrictBool | None = Hand.gravity_feedforward
+    bandwidth: Annotated[float, Unit("Hz", above=0.0)] = Hand.bandwidth
+    run: str | None = Hand.run
+
+    def value(self) -> Hand:
+        """Give what the model makes of it."""
+        return Hand(**self.model_dump())
+
+
 def _as_list(given: Any) -> Any:
     return [given] if isinstance(given, str) else given
 
@@ -64,4 +78,5 @@ class TrialTable(Table):
     columns: dict[str, str] = Field(default={})
     compensation: CompensationTable = CompensationTable()
     sticking: StickingTable = StickingTable()
+    hand: HandTable | None = None
     run: Annotated[list[RunTable], Len(1)]

@@ -11,7 +11,11 @@ from armeval.errors import InputError
 from armeval.files.arm_writer import relative, told
 from armeval.files.atomic import write_text
 from armeval.files.trial_table import TRIAL_SCHEMA
+from armeval.model.hand import Hand
 from armeval.model.trial import Run, Trial
+
+_NO_SMOOTHING = 1e9
+"""Written for an infinite bandwidth [Hz], which no unit can be given to."""
 
 
 def write_trial(
@@ -86,8 +90,22 @@ def trial_text(
         "speed_share": sticking.speed_share,
         "least_dwell": told(sticking.least_dwell, "s"),
     }
+    if trial.hand is not None:
+        content["hand"] = _hand(trial.hand)
     content["run"] = [_run(run, folder) for run in trial.runs]
     return tomli_w.dumps(content)
+
+
+def _hand(hand: Hand) -> dict[str, Any]:
+    table: dict[str, Any] = {}
+    if hand.rendered_force is not None:
+        table["rendered_force"] = told(hand.rendered_force, "N")
+    if hand.gravity_feedforward is not None:
+        table["gravity_feedforward"] = hand.gravity_feedforward
+    table["bandwidth"] = told(min(hand.bandwidth, _NO_SMOOTHING), "Hz")
+    if hand.run is not None:
+        table["run"] = hand.run
+    return table
 
 
 def _run(run: Run, folder: str | os.PathLike[str]) -> dict[str, Any]:

@@ -8,6 +8,7 @@ from typing import Literal
 
 from armeval.errors import Finding, InputError
 from armeval.model.arm import Arm
+from armeval.model.hand import Hand
 from armeval.model.joint_log import JointLog
 from armeval.model.planned_path import PlannedPath
 
@@ -92,6 +93,8 @@ class Trial:
         Where the path's direction turns by more than this [rad], it stops.
     compensation, sticking
         What the firmware's table can do; when a joint counts as resting.
+    hand
+        The hand that moves the arm; None where the trial says nothing about it.
     findings
         Warnings met while reading the files.
     files
@@ -107,6 +110,7 @@ class Trial:
     corner_angle: float = math.radians(5.0)
     compensation: Compensation = field(default_factory=Compensation)
     sticking: StickingRule = field(default_factory=StickingRule)
+    hand: Hand | None = None
     findings: tuple[Finding, ...] = ()
     files: tuple[str, ...] = ()
     source: str = ""
@@ -127,6 +131,11 @@ class Trial:
             value = getattr(self, name)
             if value is not None and not 0.0 < value < math.inf:
                 raise InputError(f"`{name}` is {value}", "give a value above 0", file=self.source, place=name)
+        if self.hand is not None and self.hand.run is not None and self.hand.run not in names:
+            have = ", ".join(f"`{name}`" for name in names)
+            raise InputError(
+                f"there is no run `{self.hand.run}`", f"runs here: {have}", file=self.source, place="[hand] run"
+            )
 
     def run(self, name: str) -> Run:
         """Find a run by its name.
