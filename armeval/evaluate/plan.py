@@ -42,10 +42,15 @@ class _Curve:
     point_arc: FloatArray
 
 
-def plan_trial(trial: Trial) -> Trajectory:
+def plan_trial(trial: Trial, *, near_singular: bool = False) -> Trajectory:
     """Plan the trajectory of a trial; see :func:`plan`."""
     return plan(
-        trial.arm, trial.path, feed=trial.feed, acceleration=trial.acceleration, corner_angle=trial.corner_angle
+        trial.arm,
+        trial.path,
+        feed=trial.feed,
+        acceleration=trial.acceleration,
+        corner_angle=trial.corner_angle,
+        near_singular=near_singular,
     )
 
 
@@ -56,6 +61,7 @@ def plan(
     feed: float | None = None,
     acceleration: float | None = None,
     corner_angle: float = math.radians(5.0),
+    near_singular: bool = False,
 ) -> Trajectory:
     """Put time on a path and find the joint targets, at every servo period.
 
@@ -76,6 +82,8 @@ def plan(
         Along the path [m/s], [m/s^2]; due where the path has no time of its own.
     corner_angle
         [rad].
+    near_singular
+        Whether the path may lead past singular poses, as a hand may; the servo's motion there is not to be trusted.
 
     Raises
     ------
@@ -85,14 +93,19 @@ def plan(
     """
     try:
         if path.space == "tip":
-            return _plan_tip(arm, path, feed, acceleration, corner_angle)
+            return _plan_tip(arm, path, feed, acceleration, corner_angle, near_singular)
         return _plan_joint(arm, path, feed, acceleration, corner_angle)
     except InputError as fault:
         raise fault.placed(file=path.source) from None
 
 
 def _plan_tip(
-    arm: Arm, path: PlannedPath, feed: float | None, acceleration: float | None, corner_angle: float
+    arm: Arm,
+    path: PlannedPath,
+    feed: float | None,
+    acceleration: float | None,
+    corner_angle: float,
+    near_singular: bool,
 ) -> Trajectory:
     curve = _polyline(path.points, np.ones(len(path.points), dtype=np.bool_), corner_angle)
     period = arm.servo.period
@@ -106,7 +119,8 @@ def _plan_tip(
     q, left = poses(arm.chain, tip, arm.rest)
     rows = RowPlaces(curve.point_arc)
     findings = find_unreached(arm.chain, tip, q, left, arm.rest, arc, rows)
-    findings.extend(find_singular(arm.chain, q, left <= REACH_TOLERANCE, arc, period, rows).found)
+    if not near_singular:
+        findings.extend(find_singular(arm.chain, q, left <= REACH_TOLERANCE, arc, period, rows).found)
     findings.raise_errors()
     return _trajectory(time, arc, tip, q, curve, period)
 
