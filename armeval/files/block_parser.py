@@ -50,7 +50,9 @@ def in_parallel(work: Callable[[Given], Made], parts: Iterable[Given]) -> Iterat
             yield waiting.popleft().result()
 
 
-def parsed(block: bytes, dialect: Dialect, groups: Sequence[Sequence[Scaled]], decimal: str) -> list[FloatArray] | None:
+def parsed(
+    block: bytes | memoryview, dialect: Dialect, groups: Sequence[Sequence[Scaled]], decimal: str
+) -> list[FloatArray] | None:
     """Parse whole lines of a table.
 
     Returns
@@ -60,7 +62,7 @@ def parsed(block: bytes, dialect: Dialect, groups: Sequence[Sequence[Scaled]], d
     """
     # A comment passes for a row where nobody looks at the column that it begins in.
     first_is_read = any(column.place == 0 for group in groups for column in group)
-    if first_is_read or b"#" not in block:
+    if first_is_read or b"#" not in bytes(block):
         rows = _parsed(block, dialect, groups, decimal)
         if rows is not None:
             return rows
@@ -69,7 +71,7 @@ def parsed(block: bytes, dialect: Dialect, groups: Sequence[Sequence[Scaled]], d
 
 
 def _parsed(
-    block: bytes, dialect: Dialect, groups: Sequence[Sequence[Scaled]], decimal: str
+    block: bytes | memoryview, dialect: Dialect, groups: Sequence[Sequence[Scaled]], decimal: str
 ) -> list[FloatArray] | None:
     import pyarrow as pa
     from pyarrow import csv
@@ -78,7 +80,7 @@ def _parsed(
     kept = [names[column.place] for group in groups for column in group]
     try:
         table = csv.read_csv(
-            pa.BufferReader(block),
+            pa.BufferReader(pa.py_buffer(block)),
             read_options=csv.ReadOptions(column_names=names, use_threads=False, block_size=len(block) + 1),
             parse_options=csv.ParseOptions(delimiter=dialect.delimiter),
             convert_options=csv.ConvertOptions(

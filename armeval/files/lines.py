@@ -16,17 +16,33 @@ class Stream(Protocol):
     def read(self, nbytes: int, /) -> bytes:
         """Give up to so many bytes; none at the end."""
 
+    def seekable(self) -> bool:
+        """Whether it can go back."""
 
-def whole_lines(stream: Stream) -> Iterator[bytes]:
-    """Give the rest of the stream in blocks that end where a line ends."""
+    def seek(self, position: int, whence: int, /) -> int:
+        """Go to a byte, counted from here where ``whence`` is 1."""
+
+
+def whole_lines(stream: Stream) -> Iterator[bytes | memoryview]:
+    """Give the rest of the stream in blocks that end where a line ends.
+
+    A stream that can go back is read from the last line end on again, so that no block has to be put together.
+    """
     held = b""
-    while block := bytes(stream.read(BLOCK)):
-        block = held + block
+    goes_back = stream.seekable()
+    while block := stream.read(BLOCK):
+        block = held + block if held else block
         # A carriage return at the very end may be half of a line end.
-        cut = max(block.rfind(b"\n"), block.rfind(b"\r", 0, len(block) - 1)) + 1
-        held = block[cut:]
-        if cut:
-            yield block[:cut]
+        cut = block.rfind(b"\n") + 1 or block.rfind(b"\r", 0, len(block) - 1) + 1
+        if not cut:
+            held = block
+            continue
+        if goes_back:
+            stream.seek(cut - len(block), 1)
+            held = b""
+        else:
+            held = block[cut:]
+        yield memoryview(block)[:cut]
     if held:
         yield held
 
@@ -34,9 +50,9 @@ def whole_lines(stream: Stream) -> Iterator[bytes]:
 def lines(stream: Stream) -> Iterator[bytes]:
     """Give the rest of the stream line by line, with the line ends."""
     for block in whole_lines(stream):
-        yield from block.splitlines(keepends=True)
+        yield from bytes(block).splitlines(keepends=True)
 
 
-def without_comments(block: bytes) -> bytes:
+def without_comments(block: bytes | memoryview) -> bytes:
     """Leave the blank lines and the comment lines out of a block of whole lines."""
     return _SAYS_NOTHING.sub(b"", block)

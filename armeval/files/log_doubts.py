@@ -12,7 +12,7 @@ from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from armeval.units import angle_text, length_text, significant, time_text
 
-_LOOKED_AT = 200_000
+_LOOKED_AT = 50_000
 _LEAST_OFFSET = np.radians(5.0)
 _LEAST_SLIDE_OFFSET = 0.01
 _LEAST_SATURATED_SHARE = 1e-3
@@ -33,11 +33,13 @@ def doubt_log(log: JointLog, arm: Arm, found: Findings, place: str) -> None:
         Where in the file the lap is; empty if it is the whole file.
     """
     _doubt_gaps(log, found, place)
-    every = slice(None, None, max(1, len(log.time) // _LOOKED_AT))
+    every = slice(None, None, max(1, len(log.time) // _LOOKED_AT))  # of a long log, some samples tell enough
+    angle = log.angle[every].copy(order="F")
+    target = None if log.target is None else log.target[every].copy(order="F")
     for j, joint in enumerate(arm.joints):
         slides = bool(arm.chain.prismatic[j])
-        if log.target is not None:
-            _doubt_position(joint, slides, log.angle[every, j], log.target[every, j], found, place)
+        if target is not None:
+            _doubt_position(joint, slides, angle[:, j], target[:, j], found, place)
         if log.torque is not None:
             _doubt_torque(joint, arm.drives[j].torque_limit, log.torque[:, j], found, place)
 

@@ -138,7 +138,8 @@ def write_joint_log(
     Parameters
     ----------
     logs
-        One lap, or several of the same signals: then there is a ``lap`` column.
+        One lap, or several of the same signals: then there is a ``lap`` column, with numbers of its own where two laps
+        have the same.
     path
         Where to: ``.csv``, ``.csv.gz`` or ``.parquet``.
     joints, prismatic
@@ -162,5 +163,8 @@ def write_joint_log(
             name = f"{joint}.{quantity} [{units[bool(slides[j])]}]"
             table[name] = np.concatenate([each[:, j] for each in values])
     if len(laps) > 1:
-        table["lap"] = np.concatenate([np.full(len(log.time), float(log.lap)) for log in laps])
+        numbers = [log.lap for log in laps]
+        if len(set(numbers)) < len(numbers):
+            numbers = list(range(1, len(laps) + 1))
+        table["lap"] = np.concatenate([np.full(len(log.time), float(n)) for log, n in zip(laps, numbers, strict=True)])
     write_table(Path(path), table)

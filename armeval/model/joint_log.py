@@ -60,7 +60,7 @@ class JointLog:
         object.__setattr__(self, "resolution", frozen(steps, (n,), "encoder resolution"))
         if k < 2:
             raise InputError(f"the log has {k} row", "log a whole lap", file=self.source)
-        if (np.diff(time) <= 0.0).any():
+        if not (time[1:] > time[:-1]).all():
             row = int(np.argmax(np.diff(time) <= 0.0)) + 1
             raise InputError("time does not rise", "remove the row", file=self.source, place=f"sample {row + 1}")
 
