@@ -23,6 +23,7 @@ from scipy import stats
 
 from armeval.arrays import FloatArray, IntArray
 from armeval.kernels.block_bootstrap import studentised_shifts
+from armeval.kernels.moments import squares_in_bins
 
 METHOD = (
     "circular block bootstrap along the path, studentised, on the logarithm of the mean square; block length after "
@@ -93,7 +94,9 @@ def block_length(series: FloatArray) -> BlockLength:
     centred = series - series.mean()
     run = max(5, int(np.log10(n)))
     most = min(int(np.ceil(np.sqrt(n))) + run, n - 1)
-    covariance = np.array([centred[k:] @ centred[: n - k] for k in range(most + 1)]) / n
+    # The autocovariances by FFT; padded, so that the ends do not meet.
+    spectrum = np.abs(np.fft.rfft(centred, 2 * n)) ** 2
+    covariance = np.fft.irfft(spectrum, 2 * n)[: most + 1] / n
     if covariance[0] <= 0.0:
         return BlockLength(1.0, 1.0, 0.0, 1)
     insignificant = np.abs(covariance) < 2.0 * np.sqrt(np.log10(n) / n) * covariance[0]
@@ -193,15 +196,10 @@ class _Binned:
 
     @classmethod
     def of(cls, laps: Sequence[FloatArray], edges: Sequence[IntArray]) -> _Binned:
-        total = np.zeros((len(laps), len(edges[0]) - 1))
         count = np.array([np.diff(edge) for edge in edges], dtype=np.float64)
-        fourth = 0.0
-        for lap, edge, row in zip(laps, edges, total, strict=True):
-            square = np.square(lap)
-            filled = np.diff(edge) > 0
-            row[filled] = np.add.reduceat(square, edge[:-1][filled])
-            fourth += float(square @ square)
-        return cls(total, count, fourth / float(count.sum()))
+        found = [squares_in_bins(np.ascontiguousarray(lap), edge) for lap, edge in zip(laps, edges, strict=True)]
+        fourth = sum(fourth for _, fourth in found) / float(count.sum())
+        return cls(np.array([squares for squares, _ in found]), count, fourth)
 
 
 def _bootstrap(

@@ -222,8 +222,15 @@ def _speeds(time: FloatArray, tip: FloatArray, when: FloatArray, direction: Floa
     It is taken over 50 ms: the toggling of one encoder count is no speed.
     """
     ends = [np.clip(when + half, time[0], time[-1]) for half in (-0.5 * _SPEED_WINDOW, 0.5 * _SPEED_WINDOW)]
-    early, late = (np.column_stack([np.interp(at, time, column) for column in tip.T]) for at in ends)
+    early, late = (_between(at, time, tip) for at in ends)
     return np.asarray(np.sum((late - early) * direction, axis=1) / (ends[1] - ends[0]))
+
+
+def _between(at: FloatArray, time: FloatArray, tip: FloatArray) -> FloatArray:
+    """Tip (m, 3) at some instants, linear between samples."""
+    after = np.clip(np.searchsorted(time, at), 1, len(time) - 1)
+    share = (at - time[after - 1]) / (time[after] - time[after - 1])
+    return np.asarray(tip[after - 1] + share[:, None] * (tip[after] - tip[after - 1]))
 
 
 def _beyond(trajectory: Trajectory, corners: FloatArray) -> FloatArray:

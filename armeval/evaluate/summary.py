@@ -11,6 +11,7 @@ from armeval.arrays import FloatArray
 from armeval.errors import InputError
 from armeval.evaluate.document import JsonValue
 from armeval.evaluate.intervals import rms_bootstrap
+from armeval.kernels.moments import moments
 
 
 @dataclass(frozen=True)
@@ -59,22 +60,21 @@ def summarise(laps: Sequence[FloatArray]) -> ErrorSummary:
     InputError
         If there is no sample.
     """
-    filled = [np.asarray(lap, dtype=np.float64) for lap in laps if len(lap)]
+    filled = [np.ascontiguousarray(lap, dtype=np.float64) for lap in laps if len(lap)]
     if not filled:
         raise InputError("there is no sample to sum up", "log at least one whole lap")
     interval = rms_bootstrap(filled)
+    totals, squares, largest = zip(*(moments(lap) for lap in filled), strict=True)
     samples = sum(len(lap) for lap in filled)
-    mean_square = sum(float(lap @ lap) for lap in filled) / samples
-    mean = sum(float(lap.sum()) for lap in filled) / samples
     median, p95 = np.quantile(np.concatenate(filled), [0.5, 0.95], overwrite_input=True)
     return ErrorSummary(
-        rms=float(np.sqrt(mean_square)),
+        rms=float(np.sqrt(sum(squares) / samples)),
         rms_low=interval.low,
         rms_high=interval.high,
-        mean=mean,
+        mean=sum(totals) / samples,
         median=float(median),
         p95=float(p95),
-        max=max(float(lap.max()) for lap in filled),
+        max=max(largest),
         samples=samples,
         effective_samples=interval.effective_samples,
     )
