@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import numpy as np
 from matplotlib.axes import Axes
 
 from armeval.evaluate.along_path import ErrorAlongPath
@@ -26,8 +27,9 @@ def along_path_plot(error: ErrorAlongPath, ax: Axes, *, stroke: Stroke, label: s
     ax.plot(s, 1e3 * error.rms, color=stroke.color, linestyle=stroke.linestyle, linewidth=1.0, label=label)
     if band and len(error.laps) > 1:
         ax.fill_between(s, 1e3 * error.low, 1e3 * error.high, color=stroke.color, alpha=0.15, linewidth=0.0)
+    half = 0.5 * float(s[1] - s[0]) if len(s) > 1 else float(s[0])
     ax.set_xlabel("path length s [mm]")
     ax.set_ylabel("tracking error [mm]")
-    ax.set_xlim(0.0, float(s[-1]))
-    ax.set_ylim(bottom=0.0)
+    ax.set_xlim(0.0, float(s[-1]) + half)
+    ax.set_ylim(0.0, max(ax.get_ylim()[1], 1.08e3 * float(np.nanmax(error.rms))))
     return ax

@@ -12,9 +12,7 @@ from armeval.model.cogmap import CogMap
 from armeval.plots.style import INK, QUIET, Stroke
 
 
-def cog_map_plot(
-    cog_map: CogMap, ax: PolarAxes, *, rests: Sequence[tuple[FloatArray, Stroke, str]] = ()
-) -> PolarAxes:
+def cog_map_plot(cog_map: CogMap, ax: PolarAxes, *, rests: Sequence[tuple[FloatArray, Stroke, str]] = ()) -> PolarAxes:
     """Draw cogging torque over one motor turn on polar axes; rests are marked on a ring outside it.
 
     Parameters

@@ -10,7 +10,7 @@ from matplotlib.axes import Axes
 from armeval.arrays import FloatArray
 from armeval.evaluate.run_errors import RunErrors
 from armeval.model.trajectory import Trajectory
-from armeval.plots.style import AFTER, BEFORE, INK, TARGET, Stroke
+from armeval.plots.style import AFTER, BEFORE, INK, TARGET, Stroke, label_text
 
 _AXIS_NAMES = ("x", "y", "z")
 _MOST_POINTS = 3000  # of one drawn line; more cannot be told apart on paper
@@ -43,7 +43,14 @@ def path_plot(
     for run, stroke in zip(runs, strokes, strict=False):
         tip = run.tracks[0].tip
         shown = 1e3 * tip[:: max(1, len(tip) // _MOST_POINTS), plane]
-        ax.plot(shown[:, 0], shown[:, 1], color=stroke.color, linestyle=stroke.linestyle, linewidth=0.9, label=run.name)
+        ax.plot(
+            shown[:, 0],
+            shown[:, 1],
+            color=stroke.color,
+            linestyle=stroke.linestyle,
+            linewidth=0.9,
+            label=label_text(run.name),
+        )
     ax.set_xlabel(f"{_AXIS_NAMES[plane[0]]} in the base frame [mm]")
     ax.set_ylabel(f"{_AXIS_NAMES[plane[1]]} in the base frame [mm]")
     ax.set_aspect("equal", adjustable="datalim")

@@ -1,0 +1,127 @@
+"""Where joints rest along the path: regions in lanes, rests of one joint over its sticking ratio."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+from matplotlib.axes import Axes
+
+from armeval.arrays import FloatArray
+from armeval.evaluate.regions import Region
+from armeval.evaluate.sticking_event import StickingEvent
+from armeval.evaluate.sticking_ratio import StickingRatio
+from armeval.plots.style import INK, QUIET, Stroke, label_text
+
+_LEAST_WIDTH = 1.5  # mm of path: a shorter rest would not be seen
+
+
+def region_lanes(
+    lanes: Sequence[tuple[str, Sequence[Region], Stroke]],
+    ax: Axes,
+    *,
+    length: float,
+    numbers: Mapping[int, int] | None = None,
+) -> Axes:
+    """Draw regions as bars along the path, one lane a run, the first on top.
+
+    Parameters
+    ----------
+    lanes
+        Name, regions and stroke of each run.
+    ax
+        Where to draw.
+    length
+        Of the path [m].
+    numbers
+        Numbers to write over regions of the first lane, by their place in it.
+    """
+    for lane, (_, regions, stroke) in enumerate(lanes):
+        spans = [_span(region.start_arc, region.end_arc) for region in regions]
+        solid = stroke.linestyle == "-"
+        ax.broken_barh(
+            spans,
+            (lane - 0.3, 0.6),
+            facecolor=stroke.color if solid else "white",
+            edgecolor=stroke.color,
+            linewidth=0.0 if solid else 0.7,
+        )
+    for place, number in (numbers or {}).items():
+        region = lanes[0][1][place]
+        middle = 5e2 * (region.start_arc + region.end_arc)
+        text = ax.annotate(
+            f"{number}", (middle, -0.3), xytext=(0, 1.5), textcoords="offset points", ha="center", fontsize=8
+        )
+        text.set_gid(f"region-number-{number}")
+    ax.set_yticks(range(len(lanes)), [label_text(name) for name, _, _ in lanes])
+    ax.set_ylim(len(lanes) - 0.5, -0.95 if numbers else -0.5)
+    ax.set_xlim(0.0, 1e3 * length)
+    ax.set_xlabel("path length s [mm]")
+    ax.grid(visible=False, axis="y")
+    return ax
+
+
+def joint_strip(
+    joint: str,
+    ratios: Sequence[tuple[StickingRatio, Stroke]],
+    rests: Sequence[tuple[str, Sequence[StickingEvent], Stroke]],
+    ax: Axes,
+    *,
+    length: float,
+    bins: int = 600,
+) -> Axes:
+    """Draw one joint's sticking ratio against path length, and its rests in lanes above.
+
+    Parameters
+    ----------
+    joint
+        Its name.
+    ratios
+        Sticking ratio of each run; where several samples fall on one drawn point, the largest counts.
+    rests
+        Name, events of all joints, and stroke of each run; only this joint's are drawn.
+    ax
+        Where to draw.
+    length
+        Of the path [m].
+    bins
+        Points of a drawn line.
+    """
+    top = 1.5
+    for ratio, stroke in ratios:
+        values = largest_in_bins(ratio.arc, ratio.ratio[:, ratio.joints.index(joint)], length, bins)
+        s = 1e3 * length * (np.arange(bins) + 0.5) / bins
+        ax.plot(s, values, color=stroke.color, linestyle=stroke.linestyle, linewidth=0.9)
+        top = max(top, float(np.nanmax(values[np.isfinite(values)], initial=0.0)))
+    ax.axhline(1.0, color=INK, linewidth=0.7, linestyle=(0, (1, 2)))
+    lane = 0.16 * top
+    for place, (_, events, stroke) in enumerate(rests):
+        spans = [_span(event.start_arc, event.end_arc) for event in events if event.joint == joint]
+        solid = stroke.linestyle == "-"
+        ax.broken_barh(
+            spans,
+            (top * 1.1 + lane * (len(rests) - 1 - place), 0.7 * lane),
+            facecolor=stroke.color if solid else "white",
+            edgecolor=stroke.color,
+            linewidth=0.0 if solid else 0.7,
+        )
+    ax.axhline(0.0, color=QUIET, linewidth=0.6)
+    ax.set_ylim(min(0.0, ax.get_ylim()[0]), top * 1.1 + lane * max(1, len(rests)) + 0.05 * top)
+    ax.set_xlim(0.0, 1e3 * length)
+    ax.set_xlabel("path length s [mm]")
+    ax.set_ylabel(f"{label_text(joint)}\nsticking ratio [–]")
+    return ax
+
+
+def largest_in_bins(arc: FloatArray, values: FloatArray, length: float, bins: int) -> FloatArray:
+    """Give the largest value in each bin of arc length, shape (bins,); NaN where a bin has no sample."""
+    at = np.clip((arc / length * bins).astype(np.int64), 0, bins - 1)
+    largest = np.full(bins, -np.inf)
+    np.maximum.at(largest, at, values)
+    return np.where(np.isfinite(largest), largest, np.nan)
+
+
+def _span(start: float, end: float) -> tuple[float, float]:
+    """Give start and width in millimetres, wide enough to be seen."""
+    width = max(1e3 * (end - start), _LEAST_WIDTH)
+    return 5e2 * (start + end) - 0.5 * width, width

@@ -1,0 +1,141 @@
+"""What stands in a report, worked out once for every form it is written in."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from armeval.evaluate.document import JsonValue, plain
+from armeval.evaluate.joint_shares import JointShare, joint_shares
+from armeval.progress import Progress, silent
+from armeval.report import figures, tables
+from armeval.report.answers import Answers
+from armeval.report.drawing import Drawing, render
+from armeval.report.evidence import evidence
+from armeval.report.linked import linked_data
+from armeval.report.merit import Merit, merits
+from armeval.report.next_steps import Step, next_steps
+from armeval.report.provenance import Provenance, provenance
+from armeval.report.shown import ShownRun, shown_runs
+from armeval.report.tables import Table
+from armeval.report.verdict import blame_text, sticking_text, verdict, worst_text
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+
+@dataclass(frozen=True, eq=False)
+class Content:
+    """What stands in a report.
+
+    Attributes
+    ----------
+    answers, runs
+        What it is about, and the runs that figures show.
+    verdict, sticking, blame, worst
+        The sentences of the first screen.
+    merits
+        Its figures of merit.
+    drawings
+        Figures by name.
+    tables
+        Tables for reading by name.
+    evidence
+        Sentences on how good the evidence is.
+    steps
+        What to do next, first things first.
+    missing
+        What the report could not show, and why.
+    provenance, linked, frames, document
+        Where it comes from, the linked view's data, the tables as data frames, the JSON document.
+    """
+
+    answers: Answers
+    runs: tuple[ShownRun, ...]
+    verdict: str
+    sticking: str
+    blame: str
+    worst: str
+    merits: tuple[Merit, ...]
+    drawings: Mapping[str, Drawing]
+    tables: Mapping[str, Table]
+    evidence: tuple[str, ...]
+    steps: tuple[Step, ...]
+    missing: Mapping[str, str]
+    provenance: Provenance
+    linked: JsonValue
+    frames: Mapping[str, pd.DataFrame]
+    document: Mapping[str, JsonValue]
+
+
+def content_of(answers: Answers, *, command: str = "", progress: Progress = silent) -> Content:
+    """Work out what stands in the report on some answers."""
+    runs = shown_runs(answers)
+    arm = answers.trial.arm
+    shares = [joint_shares(arm, run.errors.tracks) for run in runs]
+    spectra = figures.spectra(answers, runs)
+    plans = [
+        figures.path_figure(answers, runs),
+        figures.summary_figure(runs),
+        figures.along_figure(answers, runs),
+        figures.joints_figure(answers, runs),
+        figures.pose_figure(answers, runs),
+        figures.cog_maps_figure(answers, runs),
+        figures.orders_figure(answers, spectra),
+        figures.event_figure(answers, runs),
+    ]
+    wanted = [plan for plan in plans if plan is not None]
+    drawings = {}
+    for done, plan in enumerate(wanted):
+        progress("drawing figures", done, len(wanted))
+        drawings[plan.name] = render(plan)
+    progress("drawing figures", len(wanted), len(wanted))
+    origin = provenance(answers.trial, command)
+    return Content(
+        answers=answers,
+        runs=runs,
+        verdict=verdict(answers, runs),
+        sticking=sticking_text(answers, runs),
+        blame=blame_text(runs, shares),
+        worst=worst_text(runs[0]),
+        merits=merits(answers, runs),
+        drawings=drawings,
+        tables=_tables(answers, runs, shares),
+        evidence=evidence(answers, runs),
+        steps=next_steps(answers, runs),
+        missing=_missing(answers, runs, drawings),
+        provenance=origin,
+        linked=linked_data(answers, runs),
+        frames=tables.frames(answers, runs, shares, spectra),
+        document={**answers.to_document(), "provenance": plain(origin.to_document())},
+    )
+
+
+def _tables(
+    answers: Answers, runs: Sequence[ShownRun], shares: Sequence[tuple[JointShare, ...]]
+) -> Mapping[str, Table]:
+    measured = answers.measurement.runs if answers.measurement is not None else ()
+    found = {
+        "runs": tables.runs_table(answers),
+        "laps": tables.laps_table(answers),
+        "joints": tables.joints_table(runs, shares, answers.trial.arm.joints),
+        "regions": tables.regions_table(answers, runs),
+        "stretches": tables.stretches_table(runs),
+        "criteria": tables.criteria_table(measured),
+    }
+    return {name: table for name, table in found.items() if table is not None}
+
+
+def _missing(answers: Answers, runs: Sequence[ShownRun], drawings: Mapping[str, Drawing]) -> Mapping[str, str]:
+    """Say what stands where a figure or table cannot be made."""
+    said = {}
+    if answers.measurement is None:
+        said["logs"] = "No run has logs: everything here is predicted, nothing was measured."
+    if "cog-maps" not in drawings:
+        said["cog-maps"] = "No joint has a cog map, so no cogging is predicted and no rest can be held against one."
+    if "orders" not in drawings:
+        said["orders"] = "The motors turned too little to tell orders of their error apart."
+    if not any(run.sticking.events for run in runs):
+        said["sticking"] = "No joint rested while it was told to move."
+    return said

@@ -1,0 +1,89 @@
+"""How good the evidence is: laps, intervals, alignment, encoders, and what no encoder sees."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from armeval.evaluate.intervals import METHOD
+from armeval.evaluate.measure import BLIND_SPOT
+from armeval.report.answers import Answers
+from armeval.report.shown import ShownRun
+from armeval.report.verdict import laps_text, millimetres
+from armeval.units import significant
+
+
+def evidence(answers: Answers, runs: Sequence[ShownRun]) -> tuple[str, ...]:
+    """Give sentences on how far the numbers can be trusted."""
+    said = [_laps(runs)]
+    measured = [run for run in runs if run.source == "log"]
+    if measured:
+        said += [f"Intervals: {METHOD}.", _alignment(measured), _resolution(answers, measured)]
+        said.append(_sentence(f"what is not seen: {BLIND_SPOT}"))
+        said += _prediction(measured)
+    else:
+        said.append("Nothing was measured: a prediction knows only what the arm's files say.")
+    return tuple(sentence for sentence in said if sentence)
+
+
+def _laps(runs: Sequence[ShownRun]) -> str:
+    if runs[0].source == "prediction":
+        return "Each predicted run is one replayed lap."
+    text = f"Laps: {laps_text(runs)}."
+    if min(run.laps for run in runs) < 2:
+        text += " With one lap it is not known how much laps differ: the interval speaks for this lap only."
+    elif min(run.laps for run in runs) < 3:
+        text += " Three laps or more show better what recurs."
+    return text
+
+
+def _alignment(runs: Sequence[ShownRun]) -> str:
+    without = [run.name for run in runs if not all(track.targets_logged for track in run.errors.tracks)]
+    if not without:
+        return "Alignment: targets were logged, so tracking error needs no shift in time."
+    offsets = [
+        f"{run.name} {', '.join(f'{1e3 * lap.time_offset:.1f}' for lap in run.errors.laps)} ms"
+        for run in runs
+        if run.name in without
+    ]
+    return (
+        "Alignment: where no targets were logged, each lap is shifted in time to where its RMS is least "
+        f"({'; '.join(offsets)}); a constant lag does not show there."
+    )
+
+
+def _resolution(answers: Answers, runs: Sequence[ShownRun]) -> str:
+    """Hold the tip distance of one count of each encoder against the smallest error."""
+    from armeval.kernels.chain import tip_jacobians
+
+    plan = answers.trajectory
+    J = tip_jacobians(
+        answers.trial.arm.chain.arrays, np.ascontiguousarray(plan.joint[:: max(1, len(plan.joint) // 200)])
+    )
+    step = np.asarray(runs[0].errors.tracks[0].resolution)
+    if not step.any():
+        return "Encoders: their resolution is not known, so its part in the error is not either."
+    distance = float(np.sqrt(((J * step) ** 2).sum(axis=(1, 2))).max())
+    least = min(run.errors.tracking.rms for run in runs)
+    return (
+        f"Encoders: one count of every joint moves the tip by {millimetres(distance)} mm at most, "
+        f"{significant(100.0 * distance / least, 2)} % of the smaller RMS."
+    )
+
+
+def _prediction(runs: Sequence[ShownRun]) -> list[str]:
+    said = []
+    for run in runs:
+        measured, predicted = run.errors.tracking, run.predicted.errors.tracking.rms
+        inside = measured.rms_low <= predicted <= measured.rms_high
+        said.append(
+            f"Prediction beside measurement, {run.name}: {millimetres(predicted)} mm predicted, "
+            f"{millimetres(measured.rms)} mm measured; the prediction lies "
+            f"{'within' if inside else 'outside'} the measured interval."
+        )
+    return said
+
+
+def _sentence(text: str) -> str:
+    return f"{text[0].upper()}{text[1:]}."

@@ -1,0 +1,152 @@
+"""The report's sentences, built from its numbers and saying their limits."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Sequence
+
+from armeval.evaluate.joint_shares import JointShare
+from armeval.evaluate.regions import Counterpart, counterparts
+from armeval.evaluate.summary import ErrorSummary
+from armeval.report.answers import Answers
+from armeval.report.shown import ShownRun
+from armeval.units import significant
+
+
+def millimetres(metres: float) -> str:
+    """Write a length in millimetres to three digits, without the unit."""
+    return significant(1e3 * metres)
+
+
+def percent(share: float) -> str:
+    """Write a share as whole percent."""
+    return f"{100.0 * share:.0f} %"
+
+
+def interval(summary: ErrorSummary) -> str:
+    """Write the interval of an RMS in millimetres."""
+    return f"{millimetres(summary.rms_low)} to {millimetres(summary.rms_high)} mm"
+
+
+def laps_text(runs: Sequence[ShownRun]) -> str:
+    """Say how many laps stand behind a comparison."""
+    counts = [run.laps for run in runs]
+    if len(set(counts)) == 1:
+        each = " each" if len(counts) > 1 else ""
+        return f"{counts[0]} lap{'s' if counts[0] != 1 else ''}{each}"
+    return " and ".join(f"{count} lap{'s' if count != 1 else ''}" for count in counts)
+
+
+def verdict(answers: Answers, runs: Sequence[ShownRun]) -> str:
+    """Say in a sentence or two what compensation changed, or what there is to say without a comparison."""
+    compared = answers.comparison
+    if compared is None:
+        run = runs[0]
+        how = "measured" if run.source == "log" else "predicted"
+        return (
+            f"RMS tracking error of {run.name} ({run.state}), {how} over {laps_text(runs)}: "
+            f"{millimetres(run.errors.tracking.rms)} mm (95 % interval {interval(run.errors.tracking)}). "
+            + _no_pair(answers)
+        )
+    before, after = runs
+    low, high = compared.tracking_reduction_low, compared.tracking_reduction_high
+    change = compared.tracking_reduction
+    moved = "fell" if change > 0.0 else "rose"
+    direction = "less" if change > 0.0 else "more"
+    first, last = sorted((abs(low), abs(high))) if low * high > 0.0 else (low, high)
+    how = "" if before.source == "log" else "Predicted, not measured: "
+    sentence = (
+        f"{how}RMS tracking error {moved} from {millimetres(before.errors.tracking.rms)} mm ({before.name}) "
+        f"to {millimetres(after.errors.tracking.rms)} mm ({after.name}), {percent(abs(change))} {direction} "
+    )
+    if low <= 0.0 <= high:
+        sentence += (
+            f"(95 % interval of the reduction {percent(low)} to {percent(high)}), over {laps_text(runs)}: "
+            "the interval includes no change, so a difference is not shown."
+        )
+    else:
+        sentence += f"(95 % interval {100.0 * first:.0f} to {percent(last)}), over {laps_text(runs)}."
+    return sentence
+
+
+def _no_pair(answers: Answers) -> str:
+    if len(answers.trial.runs) == 1:
+        return "There is one run only, so nothing to compare it with: add a second [[run]] to the trial."
+    return "No bare and compensated run stand beside each other: choose two with --before and --after."
+
+
+def sticking_text(answers: Answers, runs: Sequence[ShownRun]) -> str:
+    """Say where the arm stuck, before and after, and what is left."""
+    told = [_regions_of(run) for run in runs]
+    if len(runs) == 1:
+        return told[0]
+    before, after = (run.sticking for run in runs)
+    if not before.regions and not after.regions:
+        return "No joint sticks in either run."
+    fates = Counter(pair.fate for pair in fates_of(answers, runs))
+    found = len(before.regions)
+    kept = fates["same"] + fates["weaker"]
+    parts = []
+    if found:
+        parts.append(f"{fates['gone']} of {found} stretches where a joint rested are gone, {fates['weaker']} weaker")
+    if fates["new"]:
+        parts.append(f"{fates['new']} new")
+    sentence = ", ".join(parts)
+    if kept + fates["new"] and after.regions:
+        causes = Counter(region.cause for region in after.regions)
+        joints = Counter(region.joint for region in after.regions)
+        top_joint, in_joint = joints.most_common(1)[0]
+        left = len(after.regions)
+        sentence += f"; of the {left} left, {in_joint} are in {top_joint}"
+        top_cause, of_cause = causes.most_common(1)[0]
+        if top_cause != "unexplained":
+            sentence += f", and {of_cause} are put down to {top_cause}"
+    return sentence[0].upper() + sentence[1:] + "."
+
+
+def _regions_of(run: ShownRun) -> str:
+    if not run.sticking.regions:
+        return f"No joint sticks in {run.name}."
+    joints = Counter(region.joint for region in run.sticking.regions)
+    told = ", ".join(f"{count} in {joint}" for joint, count in joints.most_common())
+    total = len(run.sticking.regions)
+    return f"A joint rests on {total} stretch{'es' if total != 1 else ''} of the path: {told}."
+
+
+def fates_of(answers: Answers, runs: Sequence[ShownRun]) -> tuple[Counterpart, ...]:
+    """Regions of the first shown run beside those of the second; empty where they were not matched."""
+    places = [answers.location.runs.index(run.sticking) for run in runs]
+    for matching in answers.location.matchings:
+        if matching.kind == "compensation" and [matching.first, matching.second] == places:
+            return matching.pairs
+    return counterparts(runs[0].sticking.regions, runs[1].sticking.regions)
+
+
+def blame_text(runs: Sequence[ShownRun], shares: Sequence[tuple[JointShare, ...]]) -> str:
+    """Say which joint carries most of the tip error, before and after."""
+    told = []
+    for run, of_joints in zip(runs, shares, strict=True):
+        known = [share for share in of_joints if share.share == share.share]
+        if known:
+            worst = max(known, key=lambda share: share.share)
+            told.append(f"{worst.joint} carries {percent(worst.share)} of the squared tip error in {run.name}")
+    if not told:
+        return "No joint strays."
+    return _sentence("; ".join(told))
+
+
+def worst_text(run: ShownRun) -> str:
+    """Say where sticking does most harm."""
+    if not run.sticking.regions:
+        return ""
+    region = run.sticking.regions[0]
+    place = f"{1e3 * region.start_arc:.0f} to {1e3 * region.end_arc:.0f} mm along the path"
+    rests = f"rests {1e3 * region.dwell:.0f} ms in {region.laps} of {region.of_laps} laps"
+    return (
+        f"Most harm in {run.name}: {region.joint} at {place}, {rests}, "
+        f"{significant(100.0 * region.harm, 2)} % of the squared tip error."
+    )
+
+
+def _sentence(text: str) -> str:
+    return f"{text[0].upper()}{text[1:]}."
