@@ -165,6 +165,16 @@ def find_singular(
         k = part.start + int(at)
         singular = np.linalg.svd(tip_jacobians(chain.arrays, np.ascontiguousarray(q[k : k + 1]))[0], compute_uv=False)
         effective = singular[singular > 1e-9 * singular[0]]
+        place = rows.text(float(arc[part.start]), float(arc[part.stop]))
+        if effective[-1] > LEAST_LEVER * reach:
+            text = length_text if chain.prismatic[joint] else angle_text
+            findings.error(
+                f"the pose nearest to the rest angles changes at once: joint `{chain.joints[joint]}` would have to "
+                f"jump by {text(float(rate[k, joint] * step[k]))}",
+                "give `rest_angle`s nearer to the poses that you want along the path",
+                place=place,
+            )
+            continue
         speed = float(rate[k, joint] * step[k] / period)
         unit = "m/s" if chain.prismatic[joint] else "rad/s"
         findings.error(
@@ -172,6 +182,6 @@ def find_singular(
             f"{significant(speed)} {unit} to move the tip at {length_text(float(step[k] / period))}/s "
             f"(smallest singular value of the Jacobian {length_text(float(effective[-1]))}/rad)",
             "move the path away from where the arm is stretched, folded or turns about the tip",
-            place=rows.text(float(arc[part.start]), float(arc[part.stop])),
+            place=place,
         )
     return findings

@@ -27,6 +27,10 @@ _SMALL = 1e-12
 """Weight of the rest angles against the tip error, per squared reach."""
 _CONVERGED = 1e-8
 """Newton step [rad] after which the next one would be lost in rounding."""
+_MISSED = 1e-6
+"""Share of the reach by which a tip may miss a target that counts as reached."""
+_CLOSE_BY = 0.1
+"""Largest change [rad or m] between two targets that still is one motion."""
 
 
 class _Space(NamedTuple):
@@ -281,7 +285,13 @@ def poses_along(
             for i in range(n):
                 ahead = 2.0 * poses[j - 1, i] - poses[j - 2, i]
                 q[i] = min(max(ahead, chain.lower[i]), chain.upper[i])
-        left[j] = _descend(chain, targets[j], rest, mu, q, space, downhill, 60)
+        left[j] = _descend(chain, targets[j], rest, mu, q, space, downhill, 1000)
+        if left[j] > _MISSED * reach and j > 0 and left[j - 1] <= _MISSED * reach:
+            # Joints that meet a limit can hold the descent up; from afar it may still find a pose close by.
+            again, again_left = pose_from(chain, targets[j], rest, poses[j - 1])
+            if again_left < left[j] and np.abs(again - poses[j - 1]).max() < _CLOSE_BY:
+                q[:] = again
+                left[j] = again_left
         for i in range(n):
             poses[j, i] = q[i]
     return poses, left

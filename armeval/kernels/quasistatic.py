@@ -24,6 +24,7 @@ from armeval.kernels.periodic import periodic_slope, periodic_value
 _MOST_STEPS = 1e6
 """So far a jump is looked through where the joint has no limit."""
 
+_ROUNDING = 4e-16
 _FINEST_SLIP = 0.01
 """Slips of pure friction shorter than this share of the step are taken as sliding."""
 
@@ -88,14 +89,24 @@ def _fold_between(joint: DraggedJoint, low: float, high: float, d: float) -> flo
 def _place_between(
     joint: DraggedJoint, low: float, high: float, goal: float, d: float, friction: float, load: float
 ) -> float:
-    """Where the needed target comes to the goal: below it at low, not at high."""
-    middle = 0.5 * (low + high)
-    while low < middle < high:
-        if _needed(joint, middle, d, friction, load) < goal:
-            low = middle
+    """Where the needed target comes to the goal: below it at low, not at high (regula falsi, Illinois variant)."""
+    below = _needed(joint, low, d, friction, load) - goal
+    above = _needed(joint, high, d, friction, load) - goal
+    rounding = _ROUNDING * max(abs(goal), 1.0)
+    last = 0
+    while above > rounding and high - low > rounding:
+        s = low + (high - low) * (below / (below - above))
+        miss = _needed(joint, s, d, friction, load) - goal
+        if miss < 0.0:
+            low, below = s, miss
+            above *= 0.5 if last < 0 else 1.0
+            last = -1
+            if miss > -rounding:
+                return s
         else:
-            high = middle
-        middle = 0.5 * (low + high)
+            high, above = s, miss
+            below *= 0.5 if last > 0 else 1.0
+            last = 1
     return high
 
 
