@@ -8,8 +8,8 @@ so many simulated joints follow each stretch of still counts under the torque th
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator
+from functools import cache
 
 import numpy as np
 
@@ -17,18 +17,23 @@ from armeval.arrays import FloatArray, IntArray
 from armeval.evaluate.joint_in_log import JointInLog
 from armeval.evaluate.rest import Rest, stretches
 from armeval.evaluate.threads import spread
-from armeval.kernels.rest_filter import RestPrior, normal_pool, rest_probability
+from armeval.kernels.rest_filter import MISFIT_STEPS, RestPrior, even_normals, normal_pool, rest_probability
+from armeval.kernels.still import within_width
 from armeval.model.trial import StickingRule
 
-LEAST_COUNTS = 2.6
+LEAST_COUNTS = 2.8
 """While its counts stay, a joint's target must move by this many: a rest of three counts, less rounding at both ends."""
 
-_PARTICLES = 500
-_LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.030, 0.010  # s of the log before and after the still counts that are looked at
+_PARTICLES = 2048
+_LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.060, 0.010  # s of the log before and after the still counts that are looked at
 _EDGE = 0.080  # s: further inside a long stretch of still counts, every fifth sample will do
 _DWELL_SHARE = 0.8  # a rest counts from this share of the least dwell: its ends are uncertain by a few milliseconds
-_PEAK, _FLANK = 0.75, 0.4  # probability that a rest must reach, and where it begins and ends
-_TOLERANCE = 0.25  # counts by which a simulated joint may miss a reading, one sigma, besides the encoder's jitter
+_PEAK, _FLANK = 0.6, 0.4  # probability that a rest must reach, and where it begins and ends
+_TOLERANCE = 0.2  # counts by which a simulated joint may miss a reading of an encoder without jitter, one sigma
+_NO_JITTER = 0.05  # counts, one sigma: less is none
+_ODD_READINGS = 1e-4  # share of readings that may be anything
+_STILL_WIDTH = 0.7  # counts within which averaged readings keep while a joint rests
+_SMOOTH = 7  # samples over which jittery readings are averaged to find out whether they stay
 
 
 def rests_in_counts(joint: JointInLog, rule: StickingRule) -> Iterator[Rest]:
@@ -50,7 +55,8 @@ def rests_in_counts(joint: JointInLog, rule: StickingRule) -> Iterator[Rest]:
         last = min(stop, len(joint.time) - 1)
         dwell = joint.time[last] - joint.time[first]
         peak = float(probability[first:stop].max())
-        if peak < _PEAK or dwell < _DWELL_SHARE * rule.least_dwell - 1e-9:
+        moved = np.abs(np.diff(joint.target[first : last + 1])).sum() / joint.count
+        if peak < _PEAK or dwell < _DWELL_SHARE * rule.least_dwell - 1e-9 or moved < LEAST_COUNTS:
             continue
         within = slice(first, stop)
         start_error = _flank_spread(probability[:stop][::-1], stop - 1 - first, period)
@@ -69,8 +75,37 @@ def rests_in_counts(joint: JointInLog, rule: StickingRule) -> Iterator[Rest]:
         )
 
 
-def still_stretches(counts: FloatArray) -> IntArray:
-    """Find where counts stay, or toggle by one.
+def still_stretches(counts: FloatArray, jitter: float) -> IntArray:
+    """Find where counts stay, within what jitter explains.
+
+    Without jitter that is every stretch of equal counts. With jitter, readings are averaged over a few samples, and it
+    is every longest stretch over which the averages keep within a little less than a count.
+
+    Parameters
+    ----------
+    counts
+        Shape (k,).
+    jitter
+        The encoder's, one sigma [counts].
+
+    Returns
+    -------
+    Shape (h, 2), in order of time: first sample and the one after the last.
+    """
+    if jitter < _NO_JITTER:
+        first = np.concatenate(([0], np.flatnonzero(np.diff(counts) != 0.0) + 1))
+        return np.column_stack([first, np.append(first[1:], len(counts))])
+    window = np.full(_SMOOTH, 1.0 / _SMOOTH)
+    place = np.convolve(np.pad(counts, _SMOOTH // 2, mode="edge"), window, mode="valid")
+    return within_width(place, _STILL_WIDTH + 3.0 * jitter / _SMOOTH**0.5)
+
+
+def encoder_jitter(counts: FloatArray) -> float:
+    """Estimate the encoder's jitter from readings that leave the count of both their neighbours.
+
+    At a standing joint's place u between two counts a reading is c with the probability p_c = P(c - 1/2 < u + jitter <
+    c + 1/2); the share of such strays, sum of p_c^2 p_(c+1) + p_c p_(c+1)^2 over all c and evenly over u, rises with
+    the jitter.
 
     Parameters
     ----------
@@ -79,38 +114,40 @@ def still_stretches(counts: FloatArray) -> IntArray:
 
     Returns
     -------
-    Shape (h, 2), in order of their first samples: first sample and the one after the last. Counts that go to and fro
-    between two neighbours make one stretch, as long as they do.
+    One sigma [counts], from 0 to 1.
     """
-    first = np.concatenate(([0], np.flatnonzero(np.diff(counts) != 0.0) + 1))
-    stop = np.append(first[1:], len(counts))
-    value = counts[first]
-    # Piece p and piece p + 2 hold the same count and p + 1 its neighbour: the counts toggle.
-    toggles = np.zeros(len(first), dtype=np.bool_)
-    if len(first) > 2:
-        toggles[1:-1] = (value[:-2] == value[2:]) & (np.abs(value[1:-1] - value[:-2]) == 1.0)
-    found = []
-    inside = np.zeros(len(first), dtype=np.bool_)
-    for a, b in stretches(toggles):
-        found.append((first[a - 1], stop[b]))
-        inside[a - 1 : b + 1] = True
-    alone = np.column_stack([first[~inside], stop[~inside]])
-    together = np.array(found, dtype=np.int64).reshape(-1, 2)
-    both = np.concatenate([alone, together])
-    return np.asarray(both[np.argsort(both[:, 0], kind="stable")])
+    here, near = counts[1:-1], counts[:-2]
+    lone = (near == counts[2:]) & (np.abs(here - near) == 1.0)
+    slow = np.abs(counts[4:] - counts[:-4]) <= 1.0
+    share = float(np.count_nonzero(lone[1:-1] & slow)) / max(int(np.count_nonzero(slow)), 1)
+    sigma, expected = _expected_strays()
+    return float(np.interp(share, expected, sigma))
 
 
-def encoder_jitter(counts: FloatArray) -> float:
-    """Estimate the encoder's jitter [counts, one sigma] from readings that leave their neighbours' count for one sample.
+@cache
+def _expected_strays() -> tuple[FloatArray, FloatArray]:
+    from scipy.special import ndtr
 
-    With jitter s below half a count, a reading away from the nearest count has the probability 2 s / sqrt(2 pi) when
-    all places between two counts are alike.
-    """
-    if len(counts) < 3:
-        return 0.0
-    strays = (counts[:-2] == counts[2:]) & (np.abs(counts[1:-1] - counts[:-2]) == 1.0)
-    share = float(np.mean(strays))
-    return min(share * math.sqrt(math.pi / 2.0), 1.0)
+    sigma = np.concatenate(([1e-6], np.linspace(0.02, 1.0, 50)))
+    u = (np.arange(200) + 0.5)[:, None, None] / 200.0
+    c = np.arange(-6, 8)[None, :, None]
+    p = ndtr((c + 0.5 - u) / sigma) - ndtr((c - 0.5 - u) / sigma)
+    share = (p[:, 1:] * p[:, :-1] * (p[:, 1:] + p[:, :-1])).sum(axis=1).mean(axis=0)
+    return sigma, np.maximum.accumulate(share)
+
+
+def _misfit(jitter: float) -> FloatArray:
+    """Minus log likelihood of a reading so many 64ths of a count away from the place."""
+    away = np.arange(8 * MISFIT_STEPS) / MISFIT_STEPS
+    if jitter < _NO_JITTER:
+        return np.asarray(0.5 * (np.maximum(away - 0.5, 0.0) / _TOLERANCE) ** 2)
+    from scipy.special import log_ndtr
+
+    # The far tail of the normal distribution would let one odd reading decide: a small share of readings is anything.
+    inside = log_ndtr((0.5 - away) / jitter) + np.log1p(
+        -np.exp(log_ndtr((-0.5 - away) / jitter) - log_ndtr((0.5 - away) / jitter))
+    )
+    return np.asarray(-np.logaddexp(inside, np.log(_ODD_READINGS)))
 
 
 def _rest_probability(joint: JointInLog, rule: StickingRule) -> tuple[FloatArray, FloatArray, FloatArray]:
@@ -118,34 +155,34 @@ def _rest_probability(joint: JointInLog, rule: StickingRule) -> tuple[FloatArray
     k = len(joint.time)
     probability, angle, scatter = np.zeros(k), joint.counts.copy(), np.zeros(k)
     told = np.abs(joint.told) >= rule.least_target_speed
-    path = np.concatenate(([0.0], np.cumsum(np.abs(np.diff(joint.target)) * told[1:])))
-    holds = still_stretches(joint.counts)
-    ends = np.minimum(holds[:, 1], k - 1)
-    moved = (path[ends] - path[holds[:, 0]]) / joint.count
-    lasted = joint.time[ends] - joint.time[holds[:, 0]]
-    holds = holds[(moved >= LEAST_COUNTS) & (lasted >= _DWELL_SHARE * rule.least_dwell)]
-    slow = rule.speed_share * np.maximum(np.abs(joint.told), rule.least_target_speed)
-    tolerance = _TOLERANCE + encoder_jitter(joint.counts)
-    normals = normal_pool(0)
+    jitter = encoder_jitter(joint.counts)
+    path = np.concatenate(([0.0], np.cumsum(np.abs(np.diff(joint.target)) * told[1:]))) / joint.count
+    still = still_stretches(joint.counts, jitter)
+    ends = np.minimum(still[:, 1], k - 1)
+    long_enough = joint.time[ends] - joint.time[still[:, 0]] >= _DWELL_SHARE * rule.least_dwell - 1e-9
+    still = still[(path[ends] - path[still[:, 0]] >= LEAST_COUNTS) & long_enough]
+    bound = rule.speed_share * np.maximum(np.abs(joint.told), rule.least_target_speed)
+    misfit = _misfit(jitter)
+    first, normals = even_normals(_PARTICLES, 0), normal_pool(0)
 
-    def weigh(hold: IntArray) -> tuple[IntArray, FloatArray]:
-        samples = _window(joint, hold)
+    def weigh(stretch: IntArray) -> tuple[IntArray, FloatArray]:
+        samples = _window(joint, stretch)
         found = rest_probability(
             samples,
             joint.time,
             joint.counts,
             joint.torque,
-            slow,
+            bound,
             joint.count,
-            tolerance,
-            _prior(joint, int(samples[0]), hold),
+            misfit,
+            _prior(joint, int(samples[0]), stretch, jitter),
             _DWELL_SHARE * rule.least_dwell,
-            _PARTICLES,
+            first,
             normals,
         )
         return samples, found
 
-    for samples, found in spread(weigh, list(holds)):
+    for samples, found in spread(weigh, list(still)):
         whole = np.arange(samples[0], samples[-1] + 1)
         filled = [np.interp(whole, samples, row) for row in found]
         better = filled[0] > probability[whole]
@@ -161,7 +198,7 @@ def _window(joint: JointInLog, hold: IntArray) -> IntArray:
     start = int(np.searchsorted(time, time[first] - _LEAD))
     # One change of the counts before is enough to know the speed, if it is near.
     changes = np.flatnonzero(np.diff(joint.counts[start:first]) != 0.0)
-    start = start + int(changes[-1]) if len(changes) else start
+    start = start + int(changes[-1]) + 1 if len(changes) else start
     later = np.flatnonzero(joint.counts[stop : int(np.searchsorted(time, time[stop] + _TAIL))] != joint.counts[stop])
     end = stop + int(later[0]) if len(later) else int(np.searchsorted(time, time[stop] + _TAIL))
     end = min(max(end, int(np.searchsorted(time, time[stop] + _LEAST_TAIL))), len(time) - 1)
@@ -170,15 +207,19 @@ def _window(joint: JointInLog, hold: IntArray) -> IntArray:
     return np.asarray(samples[~deep | (samples % 5 == 0)])
 
 
-def _prior(joint: JointInLog, start: int, hold: IntArray) -> RestPrior:
+def _prior(joint: JointInLog, start: int, hold: IntArray, jitter: float) -> RestPrior:
     """What to think of the joint at the start of a window, from the counts about it and from the arm."""
     before, after = (int(i) for i in np.searchsorted(joint.time, joint.time[start] + np.array([-0.012, 0.012])))
     after = min(max(after, before + 1), len(joint.time) - 1)
     span = joint.time[after] - joint.time[before]
     speed = float((joint.counts[after] - joint.counts[before]) * joint.count / span)
     inertia, stiffness = float(joint.inertia[start]), float(joint.stiffness[start])
+    place, place_spread = _place(joint, start, jitter)
     told = float(np.mean(np.abs(joint.told[hold[0] : hold[1]])))
     return RestPrior(
+        place=place,
+        place_spread=place_spread,
+        may_rest=start == 0 or joint.counts[start] == joint.counts[start - 1],
         speed=speed,
         speed_spread=0.5 * abs(speed) + joint.count / span,
         acceleration_spread=max(told, abs(speed)) * float(np.sqrt(stiffness / inertia)),
@@ -192,6 +233,19 @@ def _prior(joint: JointInLog, start: int, hold: IntArray) -> RestPrior:
         slope_spread=joint.cog_slope_spread + 0.1 * stiffness,
         wander=0.1 * joint.coulomb,
     )
+
+
+def _place(joint: JointInLog, start: int, jitter: float) -> tuple[float, float]:
+    """Angle [counts] at the start of a window, and half the width of what it may be."""
+    counts = joint.counts
+    if jitter >= _NO_JITTER:
+        near = counts[max(start - 2, 0) : start + 3]
+        return float(near.mean()), 0.5 + jitter
+    step = float(counts[start] - counts[start - 1]) if start > 0 else 0.0
+    if abs(step) != 1.0:
+        return float(counts[start]), 0.5
+    # The joint has just come over the edge between two counts.
+    return float(counts[start] - 0.5 * step + 0.2 * step), 0.25
 
 
 def _flank_spread(probability: FloatArray, inside: int, period: float) -> float:

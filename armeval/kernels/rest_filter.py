@@ -21,6 +21,8 @@ _MOST_RESTS = 4  # that a particle remembers, each as first sample, last sample 
 _FIELDS = _SLOTS + 3 * _MOST_RESTS
 _POOL = 1 << 16
 _LEAST_LOG_WEIGHT = -50.0
+_PART = 0.05  # of their spreads, by which copies of a particle are changed
+MISFIT_STEPS = 64  # entries a count of the table of misfits
 
 
 class RestPrior(NamedTuple):
@@ -28,8 +30,12 @@ class RestPrior(NamedTuple):
 
     Attributes
     ----------
+    place, place_spread
+        Angle at the start of the stretch [counts], and half the width over which it is spread evenly [counts].
     speed, speed_spread
         At the start of the stretch [rad/s].
+    may_rest
+        Whether the joint may rest at the start; half of the particles do then.
     acceleration_spread
         Spread of the acceleration at the start [rad/s^2].
     inertia, inertia_spread, friction_spread
@@ -42,8 +48,11 @@ class RestPrior(NamedTuple):
         Torque [N m] by which a millisecond of motion changes the unknown rest of the torque, one sigma.
     """
 
+    place: float
+    place_spread: float
     speed: float
     speed_spread: float
+    may_rest: bool
     acceleration_spread: float
     inertia: float
     inertia_spread: float
@@ -61,6 +70,19 @@ def normal_pool(seed: int) -> FloatArray:
     return np.random.default_rng(seed).standard_normal(_POOL)
 
 
+def even_normals(count: int, seed: int) -> FloatArray:
+    """Give standard normal numbers, shape (count, 5), that fill their space evenly (Sobol's sequence, scrambled).
+
+    The rows are in random order; ``count`` must be a power of two.
+    """
+    from scipy.special import ndtri
+    from scipy.stats import qmc
+
+    points = qmc.Sobol(5, rng=np.random.default_rng(seed)).random(count)
+    np.random.default_rng(seed + 1).shuffle(points)
+    return np.ascontiguousarray(ndtri(np.clip(points, 1e-6, 1.0 - 1e-6)))
+
+
 @jit
 def rest_probability(
     samples: IntArray,
@@ -69,10 +91,10 @@ def rest_probability(
     torque: FloatArray,
     slow: FloatArray,
     count: float,
-    tolerance: float,
+    misfit: FloatArray,
     prior: RestPrior,
     least_dwell: float,
-    particles: int,
+    first: FloatArray,
     normals: FloatArray,
 ) -> FloatArray:
     """Weigh rest against slow motion over one stretch of a log.
@@ -86,43 +108,48 @@ def rest_probability(
         which the joint counts as resting.
     count
         Angle of one count [rad].
-    tolerance
-        By how much a particle may leave the count's width, one sigma [counts].
+    misfit
+        Shape (m,). Minus the logarithm of the likelihood of a reading that is 0, 1/64, 2/64 ... counts away from the
+        place.
     prior
         What is thought before.
     least_dwell
         Shortest rest that counts [s].
-    particles
-        How many.
+    first
+        Shape (p, 5). Standard normal numbers for the start of each particle, evenly spread (:func:`even_normals`).
     normals
-        Shape (65536,). Standard normal numbers.
+        Shape (65536,). Standard normal numbers for its way.
 
     Returns
     -------
     Shape (3, s): the probability that a sample lies within a rest of at least ``least_dwell``; mean and spread of the
     angle [counts] at which it rests then.
     """
+    particles = first.shape[0]
     P = np.empty((particles, _FIELDS))
     Q = np.empty((particles, _FIELDS))
     log_weight = np.zeros(particles)
     weight = np.empty(particles)
     mask = normals.shape[0] - 1
     draw = 0
-    origin = counts[samples[0]]
+    origin = prior.place
     for p in range(particles):
         row = P[p]
-        row[_Q] = count * ((p + 0.5) / particles - 0.5)
-        row[_V] = prior.speed + prior.speed_spread * normals[draw & mask]
-        row[_INERTIA] = prior.inertia * np.exp(prior.inertia_spread * normals[(draw + 1) & mask])
-        scale = np.exp(prior.friction_spread * normals[(draw + 2) & mask])
+        row[_Q] = count * prior.place_spread * ((2.0 * p + 1.0) / particles - 1.0)
+        row[_V] = prior.speed + prior.speed_spread * first[p, 0]
+        row[_INERTIA] = prior.inertia * np.exp(prior.inertia_spread * first[p, 1])
+        scale = np.exp(prior.friction_spread * first[p, 2])
         row[_COULOMB] = prior.coulomb * scale
         row[_STATIC] = prior.static * scale
-        row[_SLOPE] = prior.slope + prior.slope_spread * normals[(draw + 3) & mask]
-        push = row[_INERTIA] * prior.acceleration_spread * normals[(draw + 4) & mask]
-        row[_W] = push + row[_COULOMB] * np.sign(row[_V])
+        row[_SLOPE] = prior.slope + prior.slope_spread * first[p, 3]
+        if p % 2 == 0 and prior.may_rest:
+            row[_V] = 0.0
+            row[_W] = row[_STATIC] * (2.0 * ((0.618034 * p) % 1.0) - 1.0)
+        else:
+            push = row[_INERTIA] * prior.acceleration_spread * first[p, 4]
+            row[_W] = push + row[_COULOMB] * np.sign(row[_V])
         row[_SINCE] = -1.0
         row[_RESTS:] = 0.0
-        draw += 5
     steps = samples.shape[0]
     for s in range(steps - 1):
         i, j = samples[s], samples[s + 1]
@@ -149,9 +176,8 @@ def rest_probability(
                 row[_Q] += dt * v
                 row[_W] += row[_SLOPE] * dt * v + wander * normals[draw & mask]
                 draw += 1
-            beyond = abs(row[_Q] / count - seen) - 0.5
-            if beyond > 0.0:
-                log_weight[p] = max(log_weight[p] - 0.5 * (beyond / tolerance) ** 2, _LEAST_LOG_WEIGHT)
+            away = min(int(MISFIT_STEPS * abs(row[_Q] / count - seen)), misfit.shape[0] - 1)
+            log_weight[p] = max(log_weight[p] - misfit[away], _LEAST_LOG_WEIGHT)
             largest = max(largest, log_weight[p])
             if abs(v) < bound_speed:
                 if row[_SINCE] < 0.0:
@@ -172,7 +198,7 @@ def rest_probability(
             total += weight[p]
             squares += weight[p] ** 2
         if total * total < 0.5 * particles * squares:
-            # Systematic resampling; the copies part company through the wander and a small change of speed.
+            # Systematic resampling; small changes let the copies part company.
             reach = 0.5 / particles
             chosen, sum_to = 0, weight[0] / total
             for p in range(particles):
@@ -180,8 +206,14 @@ def rest_probability(
                     chosen += 1
                     sum_to += weight[chosen] / total
                 Q[p] = P[chosen]
-                Q[p, _V] *= 1.0 + 0.02 * normals[draw & mask]
-                draw += 1
+                Q[p, _V] *= 1.0 + _PART * normals[draw & mask]
+                Q[p, _SLOPE] += _PART * prior.slope_spread * normals[(draw + 1) & mask]
+                change = 1.0 + _PART * prior.friction_spread * normals[(draw + 2) & mask]
+                Q[p, _COULOMB] *= change
+                Q[p, _STATIC] *= change
+                if Q[p, _V] != 0.0:
+                    Q[p, _W] += (change - 1.0) * Q[p, _COULOMB] * np.sign(Q[p, _V])
+                draw += 3
                 log_weight[p] = 0.0
                 reach += 1.0 / particles
             P, Q = Q, P

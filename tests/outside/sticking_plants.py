@@ -1,0 +1,181 @@
+"""Random arms that stick, moved by the MuJoCo plant: what a logger saw, what truly happened, what the arm's files say.
+
+The links are those of an invented arm; motors, friction, servo, encoders and path are drawn at random from a seed. The
+arm that the package is given differs from the plant as a user's would: friction within a quarter, cogging within five
+percent.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+import numpy.typing as npt
+
+import armeval
+from armeval.evaluate.lap_track import LapTrack
+from armeval.model.arm import Arm
+from armeval.model.cogmap import CogMap
+from armeval.model.drive import Drive
+from tests.plant import shipped
+from tests.plant.mujoco_plant import Plant, PlantDrive, PlantLap, PlantServo
+from tests.plant.truth import TrueRest, rests
+
+FloatArray = npt.NDArray[np.float64]
+
+PERIOD = 1e-3
+
+
+@dataclass(frozen=True, eq=False)
+class StickingLap:
+    """One lap of a random arm.
+
+    Attributes
+    ----------
+    arm
+        What the package is told of the arm.
+    target, target_speed
+        Shape (k, n) [rad], [rad/s].
+    lap
+        What the plant recorded.
+    """
+
+    arm: Arm
+    drives: tuple[PlantDrive, ...]
+    target: FloatArray
+    target_speed: FloatArray
+    lap: PlantLap
+
+    @property
+    def angle(self) -> FloatArray:
+        """Encoder angles (k, n) [rad]."""
+        return self.lap.counts * self.arm.resolution
+
+    @property
+    def true_rests(self) -> list[TrueRest]:
+        return rests(self.lap.true_angle, self.lap.true_speed, self.target_speed, PERIOD)
+
+    def counts_moved(self, rest: TrueRest) -> float:
+        """How many counts the target moved during a rest."""
+        moved = abs(self.target[rest.last, rest.joint] - self.target[rest.first, rest.joint])
+        return float(moved / self.arm.resolution[rest.joint])
+
+    def truly_slow(self, joint: int, first: int, last: int) -> bool:
+        """Whether the joint's true speed stayed below a tenth of its target's for 15 ms within some samples."""
+        rows = slice(first, last + 1)
+        slow = np.abs(self.lap.true_speed[rows, joint]) < 0.1 * np.abs(self.target_speed[rows, joint])
+        edges = np.diff(np.concatenate([[0], slow.astype(int), [0]]))
+        lengths = np.flatnonzero(edges == -1) - np.flatnonzero(edges == 1)
+        return len(lengths) > 0 and bool(lengths.max() * PERIOD >= 0.015 - 1e-9)
+
+    def track(self, every: int = 1, lap: int = 1) -> LapTrack:
+        """The lap as the package measures it, logged every so many servo periods."""
+        from armeval.kernels.chain import tip_positions
+
+        rows = slice(None, None, every)
+        angle, target = np.ascontiguousarray(self.angle[rows]), np.ascontiguousarray(self.target[rows])
+        chain = self.arm.chain.arrays
+        tip, target_tip = tip_positions(chain, angle), tip_positions(chain, target)
+        step = np.diff(target_tip, axis=0)
+        arc = np.concatenate([[0.0], np.cumsum(np.linalg.norm(step, axis=1))])
+        along = np.gradient(target_tip, axis=0)
+        along /= np.maximum(np.linalg.norm(along, axis=1), 1e-12)[:, None]
+        return LapTrack(
+            run="bare",
+            compensated=False,
+            source="log",
+            lap=lap,
+            file=None,
+            time=self.lap.time[rows],
+            arc=arc,
+            angle=angle,
+            target=target,
+            tip=tip,
+            target_tip=target_tip,
+            deviation=np.linalg.norm(tip - target_tip, axis=1),
+            lag=np.einsum("kc,kc->k", target_tip - tip, along),
+            resolution=self.arm.resolution,
+        )
+
+
+def sticking_lap(
+    seed: int, counts: int, *, jitter: float = 0.0, duration: float = 8.0, cogging: float = 1.0
+) -> StickingLap:
+    """Draw an arm and a motion and let the plant move it; ``cogging`` scales the true cogging torque."""
+    rng = np.random.default_rng(seed)
+    shape = armeval.read_arm(shipped.FOLDER / "tern" / "arm.toml")
+    given, true = [], []
+    for drive in shape.drives:
+        one, other = _drive(drive, rng, counts, jitter, cogging)
+        given.append(one)
+        true.append(other)
+    cutoff, delay = rng.uniform(80.0, 200.0), float(rng.choice([0.0, PERIOD]))
+    servo = replace(shape.servo, period=PERIOD, delay=delay, speed_cutoff=cutoff)
+    arm = Arm(shape.name, shape.chain, tuple(given), servo, shape.gravity)
+    plant = Plant(
+        shipped.urdf_text("tern"), "stylus_tip", true, PlantServo(period=PERIOD, delay=delay, speed_cutoff=cutoff)
+    )
+    target, speed = _motion(arm.rest, duration, rng)
+    (lap,) = plant.run(target, speed, seed=seed)
+    return StickingLap(arm, tuple(true), target, speed, lap)
+
+
+def _drive(
+    shape: Drive, rng: np.random.Generator, counts: int, jitter: float, cogging: float
+) -> tuple[Drive, PlantDrive]:
+    order = int(rng.choice([36, 42, 60, 84, 100, 200]))
+    stiffness = math.exp(rng.uniform(math.log(0.8), math.log(5.0)))
+    damping = stiffness * rng.uniform(0.012, 0.03)
+    amplitude = min(rng.uniform(0.0, 5.0) * stiffness / order, 0.05)
+    harmonics = (
+        (order, amplitude, rng.uniform(0.0, 6.0)),
+        (2 * order, amplitude * rng.uniform(0.0, 0.25), rng.uniform(0.0, 6.0)),
+        (14, amplitude * rng.uniform(0.0, 0.3), rng.uniform(0.0, 6.0)),
+    )
+    coulomb = math.exp(rng.uniform(math.log(1e-3), math.log(8e-3)))
+    static = coulomb * rng.uniform(1.0, 1.4)
+    doubt = rng.uniform(0.8, 1.25)
+    angle = 2.0 * math.pi * np.arange(4096) / 4096
+    believed = sum(a * (1.0 + 0.05 * rng.standard_normal()) * np.sin(n * angle + phase) for n, a, phase in harmonics)
+    common = {
+        "stiffness": stiffness,
+        "damping": damping,
+        "torque_limit": 1.0,
+        "rotor_inertia": shape.rotor_inertia,
+        "stribeck_speed": rng.uniform(0.03, 0.07),
+        "viscous_friction": shape.viscous_friction,
+        "encoder_counts": float(counts),
+    }
+    given = replace(
+        shape, cog_map=CogMap(believed), coulomb_friction=coulomb * doubt, static_friction=static * doubt,
+        index_offset=0.0, torque_step=0.0, dead_time_torque=0.0, gear_ratio=1.0, **common
+    )  # fmt: skip
+    true = PlantDrive(
+        harmonics=tuple((n, cogging * a, phase) for n, a, phase in harmonics),
+        coulomb_friction=coulomb,
+        static_friction=static,
+        encoder_jitter=jitter,
+        **common,
+    )
+    return given, true
+
+
+def _motion(rest: Sequence[float], duration: float, rng: np.random.Generator) -> tuple[FloatArray, FloatArray]:
+    """Joint targets like those of straight stretches: slow and fast, with stops and turns, near a pose."""
+    k, n = round(duration / PERIOD), len(rest)
+    speed = np.zeros((k, n))
+    at, place = round(0.1 / PERIOD), np.zeros(n)
+    while at < k:
+        lasts = rng.uniform(0.4, 1.5)
+        rows = np.arange(at, min(at + round(lasts / PERIOD), k))
+        t = (rows - at) * PERIOD
+        ramp = np.clip(np.minimum(t, lasts - t) / 0.06, 0.0, 1.0)
+        top = np.exp(rng.uniform(math.log(0.02), math.log(0.5), n)) * np.where(rng.random(n) < 0.5, -1.0, 1.0)
+        top = np.where(np.abs(place + top * lasts) > 0.5, -top, top)
+        end = top * rng.uniform(0.3, 1.5, n)
+        speed[rows] = ramp[:, None] * (top + (end - top) * (t / lasts)[:, None])
+        place = place + speed[rows].sum(axis=0) * PERIOD
+        at += round(lasts / PERIOD) + (round(rng.uniform(0.0, 0.15) / PERIOD) if rng.random() < 0.3 else 0)
+    return np.asarray(rest) + np.cumsum(speed, axis=0) * PERIOD, speed
