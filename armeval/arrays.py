@@ -42,7 +42,7 @@ def frozen(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> F
 
 
 def _is_finite(array: FloatArray) -> bool:
-    """Whether all numbers are finite. Their sum tells, in one pass over a long log; where it overflows, each of them."""
+    """Whether all numbers are finite: their sum tells in one pass over a long log; where it overflows, each of them."""
     with np.errstate(over="ignore", invalid="ignore"):
         return bool(np.isfinite(array.sum())) or bool(np.isfinite(array).all())
 

@@ -111,14 +111,11 @@ def _position(columns: Sequence[Column], place: int, arm: Arm, j: int, found: Fi
         )
         return Signal(place, math.nan)
     on_motor = drive.encoder_on == "motor"
-    # A joint-side encoder on a sliding joint counts per metre; every other one per turn of what it sits on.
-    whole = 1.0 if slides and not on_motor else 2.0 * math.pi
-    turn = whole / drive.gear_ratio if on_motor else whole
-    step = turn / drive.encoder_counts
-    wraps = [abs(step) * 2.0**bits for bits in _COUNTER_BITS]
-    if whole != 1.0:
-        wraps.append(abs(turn))
-    return Signal(place, step, tuple(sorted(wraps)))
+    step = math.copysign(drive.resolution, drive.gear_ratio) if on_motor else drive.resolution
+    wraps = [2.0**bits for bits in _COUNTER_BITS]
+    if on_motor or not slides:
+        wraps.append(drive.encoder_counts)
+    return Signal(place, step, tuple(drive.resolution * counts for counts in sorted(wraps)))
 
 
 def _targets(columns: Sequence[Column], arm: Arm, found: Findings) -> tuple[Signal, ...] | None:

@@ -69,7 +69,7 @@ def read_joint_log(
         samples, lap = read_samples(table, signals)
         laps = [samples]
         if lap is not None:
-            carry_on_joints(samples, signals, arm, found, "")
+            carry_on_joints(samples, signals, arm, found, "", one_lap=False)
             laps = parted(samples, lap, table, found)
         logs = []
         for index, samples in enumerate(laps):

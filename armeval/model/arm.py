@@ -63,13 +63,8 @@ class Arm:
 
     @property
     def resolution(self) -> FloatArray:
-        """Shape (n,) [rad or m]. Joint angle of one encoder count; 0 for an ideal encoder.
-
-        An encoder at a sliding joint counts per metre, every other one per turn.
-        """
-        per_turn = np.array([drive.resolution for drive in self.drives])
-        at_joint = np.array([drive.encoder_on == "joint" for drive in self.drives])
-        return np.where(self.chain.prismatic & at_joint, per_turn / (2.0 * np.pi), per_turn)
+        """Shape (n,) [rad or m]. Joint angle of one encoder count; 0 for an ideal encoder."""
+        return np.array([drive.resolution for drive in self.drives])
 
     @property
     def gear_ratio(self) -> FloatArray:

@@ -28,6 +28,6 @@ def gantry() -> Arm:
     drives = (
         Drive("turn", torque_limit=0.5, torque_constant=0.03, encoder_counts=16384),
         Drive("lift", gear_ratio=-6.0, torque_limit=0.5, torque_constant=0.03, encoder_counts=4096),
-        Drive("reach", gear_ratio=100.0, torque_limit=50.0, encoder_counts=20000, encoder_on="joint"),
+        Drive("reach", gear_ratio=100.0, torque_limit=50.0, encoder_counts=20000, encoder_on="joint", slides=True),
     )
     return Arm("gantry", chain, drives, Servo("joint_pd", 1e-3), np.array([0.0, 0.0, -9.80665]))

@@ -206,7 +206,7 @@ def test_counters_are_carried_on_over_the_laps_of_a_file(tmp_path: Path, gantry:
     np.testing.assert_allclose(angle, counts * TURN / 16384, atol=1e-9)
 
 
-def test_a_jump_that_is_no_rollover_stays(tmp_path: Path, gantry: Arm) -> None:
+def test_a_jump_that_is_no_rollover_stays_and_is_doubted(tmp_path: Path, gantry: Arm) -> None:
     counts = np.where(np.arange(100) < 50, 0.0, 40_000.0)
     header = "time [s],turn.angle [count],lift.angle [deg],reach.angle [mm]"
     (log,), told = read(
@@ -215,6 +215,14 @@ def test_a_jump_that_is_no_rollover_stays(tmp_path: Path, gantry: Arm) -> None:
         "\n".join([header, *rows_of(0.001 * np.arange(100), counts, counts * 0, counts * 0)]),
     )
     np.testing.assert_allclose(np.ptp(log.angle[:, 0]), 40_000 * TURN / 16384)
+    assert len(told) == 1
+    assert "the turn angle jumps by 879 deg from one sample to the next at 50.0 ms: counter" in told[0]
+
+
+def test_a_new_start_of_the_next_lap_is_no_jump(tmp_path: Path, gantry: Arm) -> None:
+    rows = [f"{0.001 * i!r},{10 * i + 40_000 * lap},0,0,{lap}" for lap in (1, 2) for i in range(100)]
+    header = "time [s],turn.angle [count],lift.angle [deg],reach.angle [mm],lap"
+    _, told = read(tmp_path / "l.csv", gantry, "\n".join([header, *rows]))
     assert told == []
 
 
