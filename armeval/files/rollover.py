@@ -125,8 +125,9 @@ def _doubt_jumps(
         first = int(np.argmax(jumps))
         size = length_text(float(steps[first])) if slides else angle_text(float(steps[first]))
         often = "" if jumps.sum() == 1 else f", the first of {int(jumps.sum()):,} such jumps"
+        when = time_text(float(time[first + 1]))
         found.warning(
-            f"the {joint} angle jumps by {size} from one sample to the next at {time_text(float(time[first + 1]))}{often}: "
+            f"the {joint} angle jumps by {size} from one sample to the next at {when}{often}: "
             "counter, loose contact or lost samples?",
             "what follows the jump may be off by it",
             place=place,
