@@ -94,7 +94,7 @@ def plan(
     try:
         if path.space == "tip":
             return _plan_tip(arm, path, feed, acceleration, corner_angle, near_singular)
-        return _plan_joint(arm, path, feed, acceleration, corner_angle)
+        return _plan_joint(arm, path, feed, acceleration, corner_angle, near_singular)
     except InputError as fault:
         raise fault.placed(file=path.source) from None
 
@@ -126,7 +126,12 @@ def _plan_tip(
 
 
 def _plan_joint(
-    arm: Arm, path: PlannedPath, feed: float | None, acceleration: float | None, corner_angle: float
+    arm: Arm,
+    path: PlannedPath,
+    feed: float | None,
+    acceleration: float | None,
+    corner_angle: float,
+    near_singular: bool,
 ) -> Trajectory:
     n = arm.chain.count
     if path.points.shape[1] != n:
@@ -147,6 +152,10 @@ def _plan_joint(
         row = np.interp(time, path.time - path.time[0], number)
         arc = np.interp(row, place, curve.point_arc)
     q = _between(row, number, path.points)
+    if path.time is None and not near_singular:
+        # At a given feed, the joints race where they hardly move the tip.
+        rows = RowPlaces(curve.point_arc[is_row])
+        find_singular(arm.chain, q, np.ones(len(q), dtype=np.bool_), arc, period, rows).raise_errors()
     return _trajectory(time, arc, tip_positions(arm.chain.arrays, q), q, curve, period)
 
 

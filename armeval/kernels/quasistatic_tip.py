@@ -103,7 +103,7 @@ def _newton(direction: FloatArray, space: _Space) -> bool:
     A joint that would have to move against its direction rests instead, since friction turns round before it does.
     """
     n = direction.shape[0]
-    for _ in range(n):
+    for _ in range(n + 1):
         for i in range(n):
             held = direction[i] == 0.0
             space.move[i] = 0.0 if held else space.left[i]

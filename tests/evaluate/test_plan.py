@@ -186,6 +186,17 @@ def test_joints_that_move_without_the_tip_need_time():
     assert trajectory.length == pytest.approx(0.1, rel=1e-6)
 
 
+def test_a_joint_path_that_folds_the_arm_at_a_feed_is_near_singular():
+    # With equal links and the elbow turning twice as fast, the tip runs straight out and back in and stands still
+    # where the arm is stretched.
+    rows = np.array([[0.5, -1.0], [-0.5, 1.0]])
+    told = faults(two_joints(), rows, space="joint")
+    assert len(told) == 1
+    assert "near a singular pose" in told[0]
+    trajectory = plan(two_joints(), PlannedPath(rows, space="joint", time=np.array([0.0, 1.0])))
+    assert trajectory.length == pytest.approx(2.0 * 0.4 * (1.0 - np.cos(0.5)), rel=1e-5)
+
+
 @pytest.mark.parametrize(
     ("settings", "what"),
     [

@@ -2,7 +2,7 @@
 
 Prandtl 1928 and Tomlinson 1929 (from memory). With phi = N theta, D = N times the target, eta = N T / K the balance is
 D = phi + eta sin phi; it folds where cos phi = -1 / eta. The table was computed from that equation with a root finder
-in another program: fold phi*, target there D*, phi after the jump, jump, mean servo torque over T.
+apart from this program: fold phi*, target there D*, phi after the jump, jump, mean servo torque over T.
 """
 
 import numpy as np
