@@ -7,10 +7,13 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from armeval.errors import InputError
 from armeval.evaluate.cause import Counterfactual, Removable
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.evaluate.lap_track import LapTrack
+from armeval.evaluate.modelled_arm import modelled
 from armeval.evaluate.plan import plan_trial
 from armeval.evaluate.quasistatic import Quasistatic, quasistatic
 from armeval.evaluate.replay import replay
@@ -19,6 +22,7 @@ from armeval.evaluate.sticking_ratio import StickingRatio, sticking_ratio
 from armeval.evaluate.tracks import track
 from armeval.model.arm import Arm
 from armeval.model.causes import Causes
+from armeval.model.drive import Drive
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Run, Trial
 from armeval.progress import Progress, silent
@@ -156,6 +160,7 @@ def predict(
         If the path cannot be followed, or the servo loop is not stable.
     """
     plan = plan_trial(trial) if trajectory is None else trajectory
+    trial = replace(trial, arm=modelled(trial.arm))
     runs = []
     for done, run in enumerate(trial.runs):
         progress("predicting", done, len(trial.runs))
@@ -215,14 +220,16 @@ def _counterfactual(trial: Trial, plan: Trajectory, run: Run, substeps: int, see
     def lap_without(joint: str, without: Removable) -> LapTrack:
         arm, causes = trial.arm, Causes()
         i = arm.chain.index(joint)
+        cog_map = arm.drives[i].cog_map
         others = tuple(0.0 if name == joint else 1.0 for name in arm.joints)
         if without == "cogging":
-            causes = Causes(cogging=others)
+            # The map goes, not the torque alone: the firmware's table would else push where nothing pulls.
+            smooth = cog_map and replace(cog_map, torque=np.zeros_like(cog_map.torque), noise=0.0)
+            arm = _with_drive(arm, i, replace(arm.drives[i], cog_map=smooth))
         elif without == "friction":
             causes = Causes(friction=others)
         elif without == "torque limit":
-            free = replace(arm.drives[i], torque_limit=math.inf)
-            arm = replace(arm, drives=(*arm.drives[:i], free, *arm.drives[i + 1 :]))
+            arm = _with_drive(arm, i, replace(arm.drives[i], torque_limit=math.inf))
         else:
             lower, upper = arm.chain.lower.copy(), arm.chain.upper.copy()
             lower[i], upper[i] = -math.inf, math.inf
@@ -230,6 +237,10 @@ def _counterfactual(trial: Trial, plan: Trajectory, run: Run, substeps: int, see
         return _replayed(trial, arm, plan, run, substeps, seed, causes)[0]
 
     return lap_without
+
+
+def _with_drive(arm: Arm, joint: int, drive: Drive) -> Arm:
+    return replace(arm, drives=(*arm.drives[:joint], drive, *arm.drives[joint + 1 :]))
 
 
 def _doubts(trial: Trial, runs: list[PredictedRun]) -> list[str]:

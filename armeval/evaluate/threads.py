@@ -14,13 +14,19 @@ Result = TypeVar("Result")
 
 
 def spread(
-    function: Callable[[Part], Result], parts: Sequence[Part], *, what: str = "", progress: Progress = silent
+    function: Callable[[Part], Result],
+    parts: Sequence[Part],
+    *,
+    what: str = "",
+    progress: Progress = silent,
+    threads: int | None = None,
 ) -> list[Result]:
     """Call a function on every part, several at a time, and give the results in the order of the parts.
 
+    ``threads`` is how many at a time; None: one a core.
     The first exception raised by a part is raised here, after the parts under way have ended.
     """
-    workers = min(len(parts), os.cpu_count() or 1)
+    workers = min(len(parts), (os.cpu_count() or 1) if threads is None else threads)
     if workers <= 1:
         results = []
         for done, part in enumerate(parts):
