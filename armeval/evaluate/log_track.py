@@ -8,7 +8,7 @@ from armeval.errors import Finding, InputError
 from armeval.evaluate.align import Alignment, align_by_targets, align_on_path, align_to_plan, path_tolerance
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.tracks import track
-from armeval.kernels.distances import farthest
+from armeval.kernels.polyline import distances_at
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from armeval.model.trajectory import Trajectory
@@ -80,7 +80,9 @@ def _track(arm: Arm, trajectory: Trajectory, run: Run, log: JointLog, alignment:
 def _targets_on_path(lap: LapTrack, trajectory: Trajectory) -> tuple[Finding, ...]:
     """Check that logged targets follow the planned path from its start to its end."""
     tolerance = path_tolerance(trajectory)
-    distance, which = farthest(lap.target_tip, lap.arc, trajectory.path, trajectory.path_arc)
+    missed = distances_at(lap.target_tip, lap.arc, trajectory.path, trajectory.path_arc)
+    which = int(np.argmax(missed))
+    distance = float(missed[which])
     place = f"lap {lap.lap}"
     if distance > _NOT_THE_PATH * tolerance:
         raise InputError(

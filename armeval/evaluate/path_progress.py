@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from armeval.arrays import FloatArray
-from armeval.kernels.polyline import nearest_near, progress
+from armeval.kernels.polyline import distances_at, nearest_near, progress
 from armeval.model.trajectory import Trajectory
 
 _AT_START = 1e-3
@@ -45,10 +45,7 @@ def path_progress(
     expected = np.ascontiguousarray(expected_arc, dtype=np.float64)
     path, arc = trajectory.path, trajectory.path_arc
     if window is None:
-        square = np.zeros(len(tip))
-        for axis in range(3):
-            square += (tip[:, axis] - np.interp(expected, arc, path[:, axis])) ** 2
-        half = 4.0 * np.sqrt(square)
+        half = 4.0 * distances_at(tip, expected, path, arc)
     else:
         half = np.full(len(tip), float(window))
     return nearest_near(tip, expected, half, path, arc)

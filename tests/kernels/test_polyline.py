@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from armeval.kernels.polyline import nearest_near, progress
+from armeval.kernels.polyline import distances_at, nearest_near, progress
 
 HAIRPIN = np.array([[0.0, 0.0, 0.0], [1.0, 0.0, 0.0], [0.0, 0.0, 0.0]])
 ARC = np.array([0.0, 1.0, 2.0])
@@ -50,3 +50,13 @@ def test_distances_of_many_points_do_not_depend_on_their_order():
 def test_progress_never_goes_back_and_stands_still_with_its_points():
     points = np.array([[0.2, 0, 0], [0.2, 0, 0], [0.19, 0, 0], [0.3, 0, 0], [0.3, 0, 0]], dtype=float)
     assert progress(points, HAIRPIN, ARC, 0.0) == pytest.approx([0.2, 0.2, 0.2, 0.3, 0.3])
+
+
+def test_distances_at_known_arc_lengths_need_no_order():
+    path = np.array([[0.0, 0.0, 0.0], [1.0, 0.0, 0.0], [1.0, 2.0, 0.0]])
+    expected = np.array([3.0, 0.5, 1.0, 2.0, -1.0, 4.0])
+    points = np.array(
+        [[1.0, 2.0, 0.4], [0.5, 0.1, 0.0], [1.0, 0.0, 0.3], [1.2, 1.0, 0.0], [0.0, -0.5, 0.0], [1.0, 2.6, 0.0]]
+    )
+    found = distances_at(points, expected, path, np.array([0.0, 1.0, 3.0]))
+    np.testing.assert_allclose(found, [0.4, 0.1, 0.3, 0.2, 0.5, 0.6])
