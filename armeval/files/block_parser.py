@@ -50,9 +50,7 @@ def in_parallel(work: Callable[[Given], Made], parts: Iterable[Given]) -> Iterat
             yield waiting.popleft().result()
 
 
-def parsed(
-    block: bytes | memoryview, dialect: Dialect, groups: Sequence[Sequence[Scaled]], decimal: str
-) -> list[FloatArray] | None:
+def parsed(block: bytes | memoryview, dialect: Dialect, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray] | None:
     """Parse whole lines of a table.
 
     Returns
@@ -63,16 +61,14 @@ def parsed(
     # A comment passes for a row where nobody looks at the column that it begins in.
     first_is_read = any(column.place == 0 for group in groups for column in group)
     if first_is_read or b"#" not in bytes(block):
-        rows = _parsed(block, dialect, groups, decimal)
+        rows = _parsed(block, dialect, groups)
         if rows is not None:
             return rows
     plain = without_comments(block)
-    return None if first_is_read and len(plain) == len(block) else _parsed(plain, dialect, groups, decimal)
+    return None if first_is_read and len(plain) == len(block) else _parsed(plain, dialect, groups)
 
 
-def _parsed(
-    block: bytes | memoryview, dialect: Dialect, groups: Sequence[Sequence[Scaled]], decimal: str
-) -> list[FloatArray] | None:
+def _parsed(block: bytes | memoryview, dialect: Dialect, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray] | None:
     import pyarrow as pa
     from pyarrow import csv
 
@@ -87,7 +83,7 @@ def _parsed(
                 column_types=dict.fromkeys(names, pa.float64()),
                 include_columns=kept,
                 null_values=[],
-                decimal_point=decimal,
+                decimal_point=dialect.decimal or ".",
             ),
         )
     except pa.ArrowInvalid as fault:

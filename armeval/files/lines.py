@@ -56,3 +56,11 @@ def lines(stream: Stream) -> Iterator[bytes]:
 def without_comments(block: bytes | memoryview) -> bytes:
     """Leave the blank lines and the comment lines out of a block of whole lines."""
     return _SAYS_NOTHING.sub(b"", block)
+
+
+def count_lines(block: bytes | memoryview) -> int:
+    """Count the lines of a block of whole lines."""
+    text = bytes(block)
+    if b"\r" in text:
+        return len(text.splitlines())
+    return text.count(b"\n") + (not text.endswith(b"\n"))

@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any, Protocol
 
@@ -17,7 +17,7 @@ from armeval.files.growing import GrowingArray
 from armeval.files.lines import lines, whole_lines
 from armeval.files.reading import existing_file
 from armeval.files.scaled import Scaled
-from armeval.files.table_faults import diagnosed
+from armeval.files.table_faults import Diagnosis
 
 _SAMPLE_BYTES = 1 << 18
 _GZIP = b"\x1f\x8b"
@@ -74,10 +74,13 @@ class TextTable:
 
     def read(self, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray]:
         """Give groups of columns in SI; see :meth:`Table.read`."""
-        values = self._fast(groups)
+        dialect = self.dialect if self.dialect.decimal else replace(self.dialect, decimal=".")
+        values = self._sound(groups, dialect)
+        if values is None and self.dialect.decimal is None and self._late_decimals_are_commas():
+            dialect = replace(self.dialect, decimal=",")
+            values = self._sound(groups, dialect)
         if values is None:
-            with _opened(self.file) as stream:
-                values = diagnosed(stream, self.dialect, groups)
+            values = self._diagnosed(groups, dialect)
         if not len(values[0]):
             raise InputError("there is a header and no row of numbers", "add rows below the header", file=self.source)
         return values
@@ -97,24 +100,46 @@ class TextTable:
                             break
         return [f"row {rows[sample]}" for sample in samples]
 
-    def _fast(self, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray] | None:
+    def _sound(self, groups: Sequence[Sequence[Scaled]], dialect: Dialect) -> list[FloatArray] | None:
         """Give the groups as pyarrow reads them; None if anything in them needs a closer look."""
-        for decimal in (self.dialect.decimal,) if self.dialect.decimal else (".", ","):
-            values = self._parsed(groups, decimal)
-            if values is not None:
-                return values
-        return None
-
-    def _parsed(self, groups: Sequence[Sequence[Scaled]], decimal: str) -> list[FloatArray] | None:
         arrays = [GrowingArray(len(group)) for group in groups]
+        for _, rows in self._blocks(groups, dialect):
+            if rows is None:
+                return None
+            for array, values in zip(arrays, rows, strict=True):
+                array.append(values)
+        return [array.finished() for array in arrays]
+
+    def _diagnosed(self, groups: Sequence[Sequence[Scaled]], dialect: Dialect) -> list[FloatArray]:
+        """Give the groups, taking a closer look at the blocks that need one."""
+        arrays = [GrowingArray(len(group)) for group in groups]
+        diagnosis = Diagnosis(dialect, groups)
+        for block, rows in self._blocks(groups, dialect):
+            if rows is None:
+                rows = diagnosis.read(block)
+            else:
+                diagnosis.skip(block)
+            for array, values in zip(arrays, rows, strict=True):
+                array.append(values)
+        diagnosis.raise_faults()
+        return [array.finished() for array in arrays]
+
+    def _blocks(
+        self, groups: Sequence[Sequence[Scaled]], dialect: Dialect
+    ) -> Iterator[tuple[bytes | memoryview, list[FloatArray] | None]]:
+        """Give blocks of lines with their rows, or None for the rows where a closer look is needed."""
+        with _opened(self.file) as stream:
+            stream.read(dialect.data_offset)
+            yield from in_parallel(lambda block: (block, parsed(block, dialect, groups)), whole_lines(stream))
+
+    def _late_decimals_are_commas(self) -> bool:
+        """Tell the mark of decimals that come after the rows from which the dialect was read."""
+        if self.dialect.delimiter == ",":
+            return False
         with _opened(self.file) as stream:
             stream.read(self.dialect.data_offset)
-            for rows in in_parallel(lambda block: parsed(block, self.dialect, groups, decimal), whole_lines(stream)):
-                if rows is None:
-                    return None
-                for array, values in zip(arrays, rows, strict=True):
-                    array.append(values)
-        return [array.finished() for array in arrays]
+            counts = [(block.count(b","), block.count(b".")) for block in map(bytes, whole_lines(stream))]
+        return sum(commas for commas, _ in counts) > sum(points for _, points in counts)
 
 
 def open_table(path: str | os.PathLike[str]) -> TextTable:

@@ -6,7 +6,6 @@ import csv
 import math
 from array import array
 from collections.abc import Sequence
-from dataclasses import dataclass, field
 from itertools import islice
 
 import numpy as np
@@ -14,111 +13,102 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.errors import Finding, InputError
 from armeval.files.dialect import NUMBER, Dialect, cells_of, decoded, is_comment
-from armeval.files.lines import Stream, lines
+from armeval.files.lines import count_lines
 from armeval.files.scaled import LARGEST, Scaled
 
 _LISTED = 20
 _NO_NUMBERS = {"nan", "inf", "infinity", "-nan", "-inf", "-infinity", "+nan", "+inf", "+infinity"}
 
 
-@dataclass
-class FaultyRows:
-    """Gathers the faults of a table's rows: the first ones in full, the others as a number of rows.
+class Diagnosis:
+    """Reads a table's rows one by one, block by block, and gathers what is wrong with them.
 
-    Attributes
-    ----------
-    listed
-        The findings.
-    more
-        Rows that are faulty beyond those listed.
-    """
-
-    listed: list[Finding] = field(default_factory=list)
-    more: int = 0
-
-    def add(self, what: str, mend: str, place: str) -> bool:
-        """Note a fault; tell whether it was listed."""
-        if len(self.listed) >= _LISTED:
-            return False
-        self.listed.append(Finding("error", what, mend, place=place))
-        return True
-
-    def error(self) -> InputError:
-        """Make one error of all."""
-        told = list(self.listed)
-        if self.more:
-            rows = "row" if self.more == 1 else "rows"
-            told.append(Finding("error", f"and {self.more:,} more {rows} with faults", "mend them likewise"))
-        return InputError.of(told)
-
-
-def diagnosed(stream: Stream, dialect: Dialect, groups: Sequence[Sequence[Scaled]]) -> list[FloatArray]:
-    """Read groups of columns of a table row by row.
+    The first faults are told in full, the others as a number of rows.
 
     Parameters
     ----------
-    stream
-        The file's bytes from its start.
     dialect
-        How it is written.
+        How the table is written.
     groups
-        The columns that belong together.
-
-    Returns
-    -------
-    list of array
-        Shape (k, columns of the group) in SI for each group.
-
-    Raises
-    ------
-    InputError
-        With every row that has a wrong number of cells, or text, NaN, infinity or a number beyond reason in a column
-        that is read.
+        The columns that are read, those that belong together in one group.
     """
-    wanted = [column for group in groups for column in group]
-    columns = [array("d") for _ in wanted]
-    faults = FaultyRows()
-    offset = 0
-    for row, raw in enumerate(lines(stream), start=1):
-        if row > dialect.header_row:
-            line = decoded(raw.rstrip(b"\r\n"), row, offset)
-            if not is_comment(line) and not _take(line, dialect, wanted, columns, row, faults):
-                faults.more += 1
-        offset += len(raw)
-    if faults.listed:
-        raise faults.error()
-    coming = iter(columns)
-    return [np.array(list(islice(coming, len(group)))).T.copy() for group in groups]
 
+    def __init__(self, dialect: Dialect, groups: Sequence[Sequence[Scaled]]) -> None:
+        self._dialect = dialect
+        self._groups = groups
+        self._wanted = [column for group in groups for column in group]
+        self._row = dialect.header_row
+        self._offset = dialect.data_offset
+        self._listed: list[Finding] = []
+        self._more = 0
 
-def _take(
-    line: str, dialect: Dialect, wanted: Sequence[Scaled], columns: list[array[float]], row: int, faults: FaultyRows
-) -> bool:
-    """Take the numbers of one row; tell whether the row is sound or its faults are listed."""
-    place = f"row {row}"
-    try:
-        cells = [cell.strip() for cell in cells_of(line, dialect.delimiter)]
-    except csv.Error:
-        return faults.add("a quote is opened and not closed", "close it, or remove it", place)
-    if cells == [column.text for column in dialect.columns]:
-        return faults.add("the header stands here again", "split the file here, or remove the row", place)
-    if len(cells) != len(dialect.columns):
-        return faults.add(*_wrong_count(len(cells), dialect), place)
-    told = True
-    for scaled, column in zip(wanted, columns, strict=True):
-        value = _number(cells[scaled.place], dialect, scaled.factor)
-        if isinstance(value, float):
-            column.append(value)
+    def skip(self, block: bytes | memoryview) -> None:
+        """Count the lines of a block that is known to be sound."""
+        self._row += count_lines(block)
+        self._offset += len(block)
+
+    def read(self, block: bytes | memoryview) -> list[FloatArray]:
+        """Read a block of whole lines; give the groups in SI, shape (k, columns of the group), NaN at the faults.
+
+        Raises
+        ------
+        InputError
+            If it is not UTF-8 text.
+        """
+        columns = [array("d") for _ in self._wanted]
+        for raw in bytes(block).splitlines(keepends=True):
+            self._row += 1
+            line = decoded(raw.rstrip(b"\r\n"), self._row, self._offset)
+            self._offset += len(raw)
+            if not is_comment(line):
+                self._take(line, columns)
+        coming = iter(columns)
+        return [np.array(list(islice(coming, len(group)))).T.reshape(-1, len(group)) for group in self._groups]
+
+    def raise_faults(self) -> None:
+        """Raise one error with every row that has a wrong number of cells, or no number of a size that can be."""
+        if self._more:
+            rows = "row" if self._more == 1 else "rows"
+            what = f"and {self._more:,} more {rows} with faults"
+            self._listed.append(Finding("error", what, "mend them likewise"))
+        if self._listed:
+            raise InputError.of(self._listed)
+
+    def _take(self, line: str, columns: list[array[float]]) -> None:
+        """Take the numbers of one row, or note its faults."""
+        place = f"row {self._row}"
+        try:
+            cells = [cell.strip() for cell in cells_of(line, self._dialect.delimiter)]
+        except csv.Error:
+            self._note([Finding("error", "a quote is opened and not closed", "close it, or remove it", place=place)])
+            return
+        if len(cells) != len(self._dialect.columns) or cells == [column.text for column in self._dialect.columns]:
+            self._note([Finding("error", *_no_row(cells, self._dialect), place=place)])
+            return
+        numbers = [_number(cells[column.place], self._dialect, column.factor) for column in self._wanted]
+        faults = [
+            Finding("error", *number, place=f"{place}, column `{self._dialect.columns[column.place].text}`")
+            for column, number in zip(self._wanted, numbers, strict=True)
+            if isinstance(number, tuple)
+        ]
+        if faults:
+            self._note(faults)
+        for column, number in zip(columns, numbers, strict=True):
+            column.append(math.nan if isinstance(number, tuple) else number)
+
+    def _note(self, faults: list[Finding]) -> None:
+        """Note the faults of one row."""
+        if len(self._listed) < _LISTED:
+            self._listed.extend(faults)
         else:
-            told &= faults.add(*value, f"{place}, column `{dialect.columns[scaled.place].text}`")
-    return told
+            self._more += 1
 
 
 def _number(cell: str, dialect: Dialect, factor: float) -> float | tuple[str, str]:
     """Give the number of a cell in SI, or what is wrong with it and how to mend it."""
     text = cell
-    if dialect.decimal != ".":
-        if dialect.decimal == "," and "." in cell and "," not in cell:
+    if dialect.decimal == ",":
+        if "." in cell and "," not in cell:
             return f"`{cell}` has a decimal point where the other rows have a comma", "write all decimals alike"
         text = cell.replace(",", ".", 1)
     if NUMBER.fullmatch(text) and math.isfinite(value := float(text)):
@@ -136,8 +126,11 @@ def _number(cell: str, dialect: Dialect, factor: float) -> float | tuple[str, st
     return f"`{cell}` is not a number", "give a number"
 
 
-def _wrong_count(count: int, dialect: Dialect) -> tuple[str, str]:
-    due = len(dialect.columns)
+def _no_row(cells: list[str], dialect: Dialect) -> tuple[str, str]:
+    """Say why cells are no row of the table, and how to mend it."""
+    if cells == [column.text for column in dialect.columns]:
+        return "the header stands here again", "split the file here, or remove the row"
+    count, due = len(cells), len(dialect.columns)
     what = f"{count} {'cell' if count == 1 else 'cells'} where the header has {due}"
     if dialect.delimiter == "," and count == 2 * due:
         return what, "where decimals are commas, part the cells by semicolon or tab"
