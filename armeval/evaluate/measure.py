@@ -12,7 +12,14 @@ from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.log_track import log_track
 from armeval.evaluate.plan import plan_trial
 from armeval.evaluate.rigid import RigidAlignment, without_rigid_offset
-from armeval.evaluate.run_errors import RunErrors, run_errors, runs_frame
+from armeval.evaluate.run_errors import (
+    RunErrors,
+    criteria_frame,
+    laps_frame,
+    run_errors,
+    runs_frame,
+    stretches_frame,
+)
 from armeval.evaluate.threads import spread
 from armeval.model.joint_log import JointLog
 from armeval.model.trajectory import Trajectory
@@ -79,6 +86,18 @@ class Measurement:
     def to_frame(self) -> pd.DataFrame:
         """One row a run and kind of error, lengths in metres."""
         return runs_frame(self.runs)
+
+    def laps_frame(self) -> pd.DataFrame:
+        """One row a run, lap and kind of error, lengths in metres."""
+        return laps_frame(self.runs)
+
+    def stretches_frame(self) -> pd.DataFrame:
+        """One row a run and stretch of path: errors along and across it, lag; lengths in metres."""
+        return stretches_frame(self.runs)
+
+    def criteria_frame(self) -> pd.DataFrame:
+        """One row a run: components of the error, lag, and the path criteria of ISO 9283; SI units."""
+        return criteria_frame(self.runs)
 
     def to_document(self) -> dict[str, JsonValue]:
         """Give the JSON document."""

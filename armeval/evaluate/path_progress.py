@@ -44,10 +44,7 @@ def path_progress(
     tip = np.ascontiguousarray(tip, dtype=np.float64)
     expected = np.ascontiguousarray(expected_arc, dtype=np.float64)
     path, arc = trajectory.path, trajectory.path_arc
-    if window is None:
-        half = 4.0 * distances_at(tip, expected, path, arc)
-    else:
-        half = np.full(len(tip), float(window))
+    half = 4.0 * distances_at(tip, expected, path, arc) if window is None else np.full(len(tip), float(window))
     return nearest_near(tip, expected, half, path, arc)
 
 

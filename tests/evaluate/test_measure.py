@@ -175,3 +175,16 @@ def test_the_turn_about_a_straight_path_is_not_claimed():
     found = measure(trial_of(ARM, straight, bare=(log,)), trajectory=straight, align="rigid")
     assert any("cannot be told" in warning for warning in found.warnings)
     assert found.rigid.runs[0].tracking.rms == pytest.approx(0.0, abs=1e-9)
+
+
+def test_frames_have_a_row_for_everything_that_was_summed_up():
+    laps = tuple(logged(scattered(1e-4, lap), lap=lap) for lap in (1, 2))
+    found = measure(trial_of(ARM, TRAJECTORY, bare=laps, compensated=laps), trajectory=TRAJECTORY)
+    assert len(found.to_frame()) == 2 * 2
+    assert len(found.laps_frame()) == 2 * 2 * 2
+    assert len(found.stretches_frame()) == 2 * 3
+    criteria = found.criteria_frame()
+    assert list(criteria["run"]) == ["bare", "compensated"]
+    assert {"along_rms_m", "across_rms_m", "lag_time_s", "AT_m", "RT_m", "AV", "RV", "FV_m_s", "CR_m", "CO_m"} <= set(
+        criteria.columns
+    )
