@@ -12,6 +12,7 @@ from typing import TypeVar
 import numpy as np
 
 from armeval.arrays import FloatArray
+from armeval.files.arrow import from_arrow
 from armeval.files.dialect import Dialect
 from armeval.files.lines import without_comments
 from armeval.files.scaled import Scaled, scaled_rows
@@ -88,4 +89,4 @@ def _parsed(block: bytes | memoryview, dialect: Dialect, groups: Sequence[Sequen
         )
     except pa.ArrowInvalid as fault:
         return [np.empty((0, len(group))) for group in groups] if "Empty CSV file" in str(fault) else None
-    return scaled_rows([column.to_numpy() for column in table.columns], groups)
+    return scaled_rows([from_arrow(column) for column in table.columns], groups)

@@ -10,6 +10,7 @@ from dataclasses import replace
 from pathlib import Path
 
 from armeval.errors import Findings, InputError
+from armeval.files.bag_table import BAG_INDEX
 from armeval.files.text_file import what_is_there
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
@@ -52,10 +53,15 @@ def _matching(wanted: Path) -> list[Path]:
     first = next(index for index, part in enumerate(parts) if any(mark in part for mark in _WILD))
     fixed, wild = Path(*parts[:first]), str(Path(*parts[first:]))
     try:
-        found = (file for file in fixed.glob(wild) if file.is_file() and not file.name.startswith("."))
+        found = (file for file in fixed.glob(wild) if _is_log(file) and not file.name.startswith("."))
         return sorted(found, key=lambda file: file.parts)
     except (OSError, ValueError, NotImplementedError):
         return []
+
+
+def _is_log(file: Path) -> bool:
+    """Whether it can be a log: a file, or the folder of a bag."""
+    return file.is_file() or (file / BAG_INDEX).is_file()
 
 
 def _doubtful_order(files: Sequence[Path], findings: Findings, place: str) -> None:

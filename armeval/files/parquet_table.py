@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 
 from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError
+from armeval.files.arrow import from_arrow
 from armeval.files.dialect import Column
 from armeval.files.growing import GrowingArray
 from armeval.files.reading import existing_file
@@ -55,7 +56,7 @@ class ParquetTable:
                 for index in range(opened.num_row_groups):
                     table = opened.read_row_group(index, columns=texts).select(texts)
                     table = table.cast(pa.schema([(text, pa.float64()) for text in texts]), safe=False)
-                    columns = [column.to_numpy() for column in table.columns]
+                    columns = [from_arrow(column) for column in table.columns]
                     rows = scaled_rows(columns, groups)
                     if rows is None:
                         raise no_numbers(columns, groups, self, done)

@@ -8,6 +8,7 @@ from pathlib import Path
 
 from armeval.arrays import FloatArray
 from armeval.errors import InputError
+from armeval.files.arrow import to_arrow
 
 
 def write_table(file: str | os.PathLike[str], columns: Mapping[str, FloatArray]) -> None:
@@ -31,7 +32,7 @@ def write_table(file: str | os.PathLike[str], columns: Mapping[str, FloatArray])
 
     path = Path(file)
     part = path.with_name(f".{path.name}.part")
-    table = pa.table({name: pa.array(values) for name, values in columns.items()})
+    table = pa.table({name: to_arrow(values) for name, values in columns.items()})
     try:
         try:
             with part.open("wb") as raw:

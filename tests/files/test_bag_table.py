@@ -11,6 +11,7 @@ import pytest
 from armeval.arrays import FloatArray
 from armeval.errors import Findings
 from armeval.files.log_file import read_joint_log, write_joint_log
+from armeval.files.logs import find_logs
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from tests.files.findings import only_fault
@@ -169,3 +170,12 @@ def test_text_parquet_and_bag_hold_the_same_numbers(tmp_path: Path, gantry: Arm)
         assert np.array_equal(log.time, written.time)
         assert np.array_equal(log.angle, written.angle)
         assert np.array_equal(log.torque, torque)
+
+
+def test_a_pattern_names_the_folders_of_bags(tmp_path: Path, gantry: Arm) -> None:
+    states = {"/joint_states": states_of(gantry.joints, motion(10)[1])}
+    for name in ("bare-2", "bare-1"):
+        write_bag(tmp_path / name, states)
+    (tmp_path / "bare-3").mkdir()
+    found = find_logs(tmp_path, ["bare-*"], Findings(), place="")
+    assert [file.name for file in found] == ["bare-1", "bare-2"]

@@ -1,6 +1,8 @@
 from __future__ import annotations
 
 import gzip
+import subprocess
+import sys
 from pathlib import Path
 
 import numpy as np
@@ -213,3 +215,14 @@ def test_places_are_rows_of_the_file(tmp_path: Path) -> None:
     file = tmp_path / "t.csv"
     file.write_text("# comment\ntime [s],q [deg]\n0,1\n\n1,2\n# pause\n2,3\n")
     assert open_table(file).places([2, 0, 1]) == ["row 7", "row 3", "row 5"]
+
+
+def test_reading_a_table_imports_no_pandas(tmp_path: Path) -> None:
+    file = tmp_path / "p.csv"
+    file.write_text("x [mm],y [mm],z [mm]\n0,0,0\n1,1,1\n")
+    script = (
+        "import sys; from armeval.files.path_file import read_path, write_path; "
+        f"write_path(read_path({str(file)!r}, [], []), {str(tmp_path / 'q.csv')!r}); "
+        "assert not {'pandas', 'matplotlib', 'numba'} & sys.modules.keys()"
+    )
+    subprocess.run([sys.executable, "-c", script], check=True)
