@@ -135,8 +135,10 @@ def measure(
     Raises
     ------
     InputError
-        If no run has logs, a log is shorter than the trajectory or its targets do not follow the path.
+        If no run has logs; with every log that is shorter than the trajectory or whose targets do not follow the path.
     """
+    if align not in ("time", "rigid"):
+        raise InputError(f"`{align}` is no alignment", "give `time` or `rigid`")
     if not any(run.laps for run in trial.runs):
         raise InputError("no run has logs", "add `logs` to a [[run]]", file=trial.source)
     if trajectory is None:
@@ -144,16 +146,23 @@ def measure(
     plan = trajectory
     jobs = [(run, log) for run in trial.runs for log in run.laps]
 
-    def held(job: tuple[Run, JointLog]) -> tuple[LapTrack, tuple[Finding, ...]]:
-        return log_track(trial.arm, plan, *job)
+    def held(job: tuple[Run, JointLog]) -> tuple[LapTrack, tuple[Finding, ...]] | InputError:
+        try:
+            return log_track(trial.arm, plan, *job)
+        except InputError as fault:
+            return fault
 
-    laps = spread(held, jobs, what="measuring laps", progress=progress)
+    found = spread(held, jobs, what="measuring laps", progress=progress)
+    laps = [lap for lap in found if not isinstance(lap, InputError)]
+    if len(laps) < len(found):
+        faults = [fault for fault in found if isinstance(fault, InputError)]
+        raise InputError.of(finding for fault in faults for finding in fault.findings)
     runs = [
         run_errors([lap for (of, _), (lap, _) in zip(jobs, laps, strict=True) if of is run], plan)
         for run in trial.runs
         if run.laps
     ]
-    findings = (*trial.findings, *(finding for _, found in laps for finding in found))
+    findings = (*trial.findings, *(finding for _, doubts in laps for finding in doubts))
     rigid = without_rigid_offset(runs, plan) if align == "rigid" else None
     if rigid is not None:
         findings = (*findings, *rigid.findings)

@@ -135,11 +135,17 @@ def test_progress_counts_all_laps():
     assert heard == [(done, 6) for done in range(1, 7)]
 
 
-def test_a_fault_in_one_log_names_it():
-    laps = (logged(TRAJECTORY.tip), logged(TRAJECTORY.tip, lap=2))
-    short = replace(laps[1], time=laps[1].time[:500], angle=laps[1].angle[:500], target=laps[1].target[:500])
-    with pytest.raises(InputError, match=r"lap-2\.csv, lap 2"):
-        measure(trial_of(ARM, TRAJECTORY, bare=(laps[0], short)), trajectory=TRAJECTORY)
+def test_every_log_at_fault_is_named():
+    laps = [logged(TRAJECTORY.tip, lap=lap) for lap in (1, 2, 3)]
+    short = [replace(lap, time=lap.time[:500], angle=lap.angle[:500], target=lap.target[:500]) for lap in laps]
+    with pytest.raises(InputError) as caught:
+        measure(trial_of(ARM, TRAJECTORY, bare=(short[0], laps[1], short[2])), trajectory=TRAJECTORY)
+    assert [finding.file for finding in caught.value.findings] == ["lap-1.csv", "lap-3.csv"]
+
+
+def test_an_unknown_alignment_is_refused():
+    with pytest.raises(InputError, match="`time` or `rigid`"):
+        measure(trial_of(ARM, TRAJECTORY, bare=(logged(TRAJECTORY.tip),)), trajectory=TRAJECTORY, align="best")
 
 
 def test_encoder_resolution_comes_from_the_log_else_from_the_arm():
