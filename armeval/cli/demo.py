@@ -8,6 +8,7 @@ from typing import Annotated
 import typer
 
 from armeval.cli.answer import Force
+from armeval.cli.command_line import command_line
 
 
 def demo(
@@ -23,7 +24,11 @@ def demo(
     with ProgressBar() as progress:
         trial_file = write_demo(folder, force=force)
         written = write_report(
-            read_trial(trial_file, progress=progress), folder / "report", force=force, progress=progress
+            read_trial(trial_file, progress=progress),
+            folder / "report",
+            force=force,
+            command=command_line(),
+            progress=progress,
         )
     typer.echo(f"wrote the trial {trial_file}")
     typer.echo(f"wrote its report {written}: open it in a browser")

@@ -3,11 +3,15 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import Annotated
+from typing import TYPE_CHECKING, Annotated, cast
 
 import typer
 
 from armeval.cli.answer import AsJson, Force, TrialFile
+from armeval.cli.command_line import command_line
+
+if TYPE_CHECKING:
+    from armeval.report.write import Format
 
 
 def report(
@@ -22,6 +26,10 @@ def report(
         str | None,
         typer.Option("--after", metavar="RUN", help="Run to compare with; default: the first compensated one."),
     ] = None,
+    formats: Annotated[
+        str,
+        typer.Option("--format", metavar="LIST", help="html, pdf, md; several with commas."),
+    ] = "html",
     as_json: AsJson = False,
     force: Force = False,
 ) -> None:
@@ -32,7 +40,16 @@ def report(
 
     with ProgressBar() as progress:
         trial = read_trial(file, progress=progress)
-        written = write_report(trial, out, before=before, after=after, force=force, progress=progress)
+        written = write_report(
+            trial,
+            out,
+            before=before,
+            after=after,
+            force=force,
+            formats=[cast("Format", name.strip()) for name in formats.split(",")],
+            command=command_line(),
+            progress=progress,
+        )
     if as_json:
         typer.echo((written.parent / "results.json").read_text(encoding="utf-8"), nl=False)
     else:

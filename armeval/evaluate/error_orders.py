@@ -1,8 +1,8 @@
 """The spectrum of a joint's error over its motor angle: cogging shows at the orders of its cog map.
 
 Error over time has no fixed frequency, because the joint's speed changes; over motor angle cogging is periodic. The
-error is averaged in cells of motor angle, separately for both turning directions, so that neither speed nor friction,
-which changes sign with the direction, weighs in; what is left is windowed over the range that was visited.
+error is averaged in cells of motor angle, for each turning direction less its own mean, so that neither speed nor
+friction, which changes sign with the direction, weighs in; what is left is windowed over the range that was visited.
 """
 
 from __future__ import annotations
@@ -77,13 +77,14 @@ def error_orders(drive: Drive, tracks: Sequence[LapTrack], index: int, *, highes
     visited = count * 2.0 * np.pi / _CELLS
     if visited < _LEAST_RANGE:
         return None
-    means = [_cell_means(cell[way], error[way], count) for way in (speed > 0.0, speed < 0.0)]
-    both = np.isfinite(means[0]) & np.isfinite(means[1])
-    # A cell that only one direction visited carries friction's sign; it is used where no cell saw both.
-    profile = np.where(both, 0.5 * (means[0] + means[1]), np.nan)
-    if both.sum() < 0.5 * np.isfinite(np.fmax(*means)).sum():
-        profile = np.where(both, profile, np.where(np.isfinite(means[0]), *means))
-    known = np.flatnonzero(np.isfinite(profile))
+    means = np.array([_cell_means(cell[way], error[way], count) for way in (speed > 0.0, speed < 0.0)])
+    seen = np.isfinite(means)
+    # Friction and lag shift each direction as a whole; where one alone passed, its shift must not pass for a step.
+    offset = np.where(seen, means, 0.0).sum(axis=1) / np.maximum(seen.sum(axis=1), 1)
+    visits = seen.sum(axis=0)
+    total = np.where(seen, means - offset[:, None], 0.0).sum(axis=0)
+    profile = total / np.where(visits > 0, visits, np.nan)
+    known = np.flatnonzero(visits)
     if len(known) < 8:
         return None
     angle = known * (2.0 * np.pi / _CELLS)

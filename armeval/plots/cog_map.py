@@ -34,7 +34,7 @@ def cog_map_plot(cog_map: CogMap, ax: PolarAxes, *, rests: Sequence[tuple[FloatA
         radius = np.full(len(angles), ring + 0.3 * reach * lane)
         ax.plot(angles, radius, stroke.marker, color=stroke.color, markersize=3.0, label=name, alpha=0.8)
     ax.set_ylim(-2.2 * reach, ring + 0.3 * reach * max(1, len(rests)))
-    ax.set_yticks([-reach, 0.0, reach], [f"{-reach:.3g}", "0", f"{reach:.3g}"])
+    ax.set_yticks([-reach, 0.0, reach], [])
     ax.set_thetagrids(range(0, 360, 90))
     ax.tick_params(labelsize=7)
     ax.grid(linewidth=0.4)

@@ -13,7 +13,7 @@ from armeval.plots.style import GRID, INK, TARGET, Stroke
 
 
 def _shown(event: StickingEvent, track: LapTrack) -> BoolArray:
-    margin = max(0.1, 0.8 * event.dwell)
+    margin = max(0.15, 0.8 * event.dwell)
     return (track.time >= event.start - margin) & (track.time <= event.end + margin)
 
 

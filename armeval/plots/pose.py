@@ -2,18 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
-import numpy as np
 from matplotlib.axes import Axes
 
 from armeval.arrays import FloatArray
 from armeval.plots.style import INK, TARGET
+from armeval.plots.view import View
 
-_NAMES = ("x", "y", "z")
 
-
-def pose_plot(path: FloatArray, skeleton: FloatArray, plane: Sequence[int], ax: Axes) -> Axes:
+def pose_plot(path: FloatArray, skeleton: FloatArray, ax: Axes, *, view: View) -> Axes:
     """Draw the path and the arm through its joints.
 
     Parameters
@@ -22,25 +18,18 @@ def pose_plot(path: FloatArray, skeleton: FloatArray, plane: Sequence[int], ax: 
         Shape (p, 3) [m]. The planned path.
     skeleton
         Shape (n + 2, 3) [m]. Base, joints, tip.
-    plane
-        Which two base axes are drawn, horizontal first.
     ax
         Where to draw.
+    view
+        From which side.
     """
-    a, b = plane
-    ax.plot(1e3 * path[:, a], 1e3 * path[:, b], color=TARGET, linewidth=1.2)
-    (arm,) = ax.plot(1e3 * skeleton[:, a], 1e3 * skeleton[:, b], color=INK, linewidth=2.4, solid_capstyle="round")
-    (joints,) = ax.plot(
-        1e3 * skeleton[:-1, a], 1e3 * skeleton[:-1, b], "o", color=INK, markerfacecolor="white", markersize=4.5
-    )
+    ax.plot(*view.of(path), color=TARGET, linewidth=1.2)
+    across, up = view.of(skeleton)
+    (arm,) = ax.plot(across, up, color=INK, linewidth=2.4, solid_capstyle="round", solid_joinstyle="round")
+    (joints,) = ax.plot(across[:-1], up[:-1], "o", color=INK, markerfacecolor="white", markersize=4.5)
     arm.set_gid("arm")
     joints.set_gid("arm-joints")
-    ax.set_xlabel(f"{_NAMES[a]} [mm]")
-    ax.set_ylabel(f"{_NAMES[b]} [mm]")
-    ax.set_aspect("equal", adjustable="datalim")
+    view.set_up(ax)
+    ax.set_xlabel(ax.get_xlabel().replace(" in the base frame", ""))
+    ax.set_ylabel(ax.get_ylabel().replace(" in the base frame", ""))
     return ax
-
-
-def spread_of(points: FloatArray) -> FloatArray:
-    """Extent of points of shape (k, 3) along each base axis, shape (3,) [m]."""
-    return np.asarray(np.ptp(points, axis=0))

@@ -5,13 +5,16 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 
 import numpy as np
+from matplotlib.artist import Artist
 from matplotlib.axes import Axes
+from matplotlib.lines import Line2D
+from matplotlib.patches import Patch
 
 from armeval.arrays import FloatArray
 from armeval.evaluate.regions import Region
 from armeval.evaluate.sticking_event import StickingEvent
 from armeval.evaluate.sticking_ratio import StickingRatio
-from armeval.plots.style import INK, QUIET, Stroke, label_text
+from armeval.plots.style import INK, Stroke, label_text
 
 _LEAST_WIDTH = 1.5  # mm of path: a shorter rest would not be seen
 
@@ -21,7 +24,7 @@ def region_lanes(
     ax: Axes,
     *,
     length: float,
-    numbers: Mapping[int, int] | None = None,
+    numbers: Mapping[str, float] | None = None,
 ) -> Axes:
     """Draw regions as bars along the path, one lane a run, the first on top.
 
@@ -34,7 +37,7 @@ def region_lanes(
     length
         Of the path [m].
     numbers
-        Numbers to write over regions of the first lane, by their place in it.
+        What to write over the first lane, and where along the path [m].
     """
     for lane, (_, regions, stroke) in enumerate(lanes):
         spans = [_span(region.start_arc, region.end_arc) for region in regions]
@@ -46,14 +49,12 @@ def region_lanes(
             edgecolor=stroke.color,
             linewidth=0.0 if solid else 0.7,
         )
-    for place, number in (numbers or {}).items():
-        region = lanes[0][1][place]
-        middle = 5e2 * (region.start_arc + region.end_arc)
+    for number, place in (numbers or {}).items():
         text = ax.annotate(
-            f"{number}", (middle, -0.3), xytext=(0, 1.5), textcoords="offset points", ha="center", fontsize=8
+            number, (1e3 * place, -0.3), xytext=(0, 1.5), textcoords="offset points", ha="center", fontsize=8
         )
         text.set_gid(f"region-number-{number}")
-    ax.set_yticks(range(len(lanes)), [label_text(name) for name, _, _ in lanes])
+    ax.set_yticks(range(len(lanes)), [label_text(name, 12) for name, _, _ in lanes])
     ax.set_ylim(len(lanes) - 0.5, -0.95 if numbers else -0.5)
     ax.set_xlim(0.0, 1e3 * length)
     ax.set_xlabel("path length s [mm]")
@@ -105,12 +106,26 @@ def joint_strip(
             edgecolor=stroke.color,
             linewidth=0.0 if solid else 0.7,
         )
-    ax.axhline(0.0, color=QUIET, linewidth=0.6)
-    ax.set_ylim(min(0.0, ax.get_ylim()[0]), top * 1.1 + lane * max(1, len(rests)) + 0.05 * top)
+    ax.set_ylim(0.0, top * 1.1 + lane * max(1, len(rests)) + 0.05 * top)
+    ax.set_yticks([tick for tick in ax.get_yticks() if 0.0 <= tick <= top])
     ax.set_xlim(0.0, 1e3 * length)
     ax.set_xlabel("path length s [mm]")
-    ax.set_ylabel(f"{label_text(joint)}\nsticking ratio [–]")
+    ax.set_ylabel(f"{label_text(joint, 16)}\nratio [–]")
     return ax
+
+
+def strip_handles(name: str, stroke: Stroke) -> list[Artist]:
+    """Give legend entries for one run's line and bars in :func:`joint_strip`."""
+    solid = stroke.linestyle == "-"
+    return [
+        Line2D([], [], color=stroke.color, linestyle=stroke.linestyle, label=f"ratio, {label_text(name, 20)}"),
+        Patch(
+            facecolor=stroke.color if solid else "white",
+            edgecolor=stroke.color,
+            linewidth=0.7,
+            label=f"rests, {label_text(name, 20)}",
+        ),
+    ]
 
 
 def largest_in_bins(arc: FloatArray, values: FloatArray, length: float, bins: int) -> FloatArray:

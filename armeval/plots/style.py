@@ -6,12 +6,13 @@ style, marker and filling, so that a copy in black and white can be read.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Literal
 
 if TYPE_CHECKING:
+    from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
 INK = "#22262a"
@@ -25,7 +26,7 @@ class Stroke:
     """How one thing is drawn in every figure."""
 
     color: str
-    linestyle: str
+    linestyle: Literal["-", "--", ":"]
     marker: str
 
 
@@ -69,9 +70,10 @@ RC: Mapping[str, Any] = {
 }
 
 
-def label_text(text: str) -> str:
-    """Make text from a file safe to draw: a dollar sign would start a formula."""
-    return text.replace("$", r"\$")
+def label_text(text: str, most: int = 60) -> str:
+    """Make text from a file safe to draw: a dollar sign would start a formula, and a long text would not fit."""
+    cut = text if len(text) <= most else text[: most - 1] + "…"
+    return cut.replace("$", r"\$")
 
 
 @contextmanager
@@ -84,10 +86,42 @@ def quiet_style() -> Iterator[None]:
 
 
 def figure(width: float, height: float) -> Figure:
-    """Give an empty figure [inches] that belongs to no window."""
+    """Give an empty figure [inches] that belongs to no window; its parts find their places themselves."""
     from matplotlib.backends.backend_agg import FigureCanvasAgg
     from matplotlib.figure import Figure
 
     made = Figure(figsize=(width, height), layout="constrained")
     FigureCanvasAgg(made)
     return made
+
+
+def strip_figure(width: float, heights: Sequence[float], *, above: float = 0.08) -> tuple[Figure, list[Axes]]:
+    """Give a figure of strips over one axis, in the same places whatever is drawn on them.
+
+    Parameters
+    ----------
+    width
+        Of the figure [inches].
+    heights
+        Of the strips [inches], the uppermost first.
+    above
+        Space above the first strip [inches].
+    """
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+    from matplotlib.figure import Figure
+
+    left, right, below, between = 0.78, 0.12, 0.46, 0.16
+    height = above + sum(heights) + between * (len(heights) - 1) + below
+    made = Figure(figsize=(width, height))
+    FigureCanvasAgg(made)
+    axes: list[Axes] = []
+    top = height - above
+    for strip in heights:
+        box = (left / width, (top - strip) / height, (width - left - right) / width, strip / height)
+        axes.append(made.add_axes(box, sharex=axes[0] if axes else None))
+        top -= strip + between
+    for k, ax in enumerate(axes):
+        ax.xaxis.set_gid(f"x-axis-{k}")
+        ax.tick_params(labelbottom=ax is axes[-1])
+        ax.yaxis.set_label_coords(-0.4 / (width - left - right), 0.5)
+    return made, axes

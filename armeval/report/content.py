@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 from armeval.evaluate.document import JsonValue, plain
 from armeval.evaluate.joint_shares import JointShare, joint_shares
+from armeval.evaluate.measure import BLIND_SPOT
 from armeval.progress import Progress, silent
 from armeval.report import figures, tables
 from armeval.report.answers import Answers
@@ -43,6 +44,8 @@ class Content:
         Tables for reading by name.
     evidence
         Sentences on how good the evidence is.
+    warnings
+        What was doubtful about the input or the method.
     steps
         What to do next, first things first.
     missing
@@ -61,6 +64,7 @@ class Content:
     drawings: Mapping[str, Drawing]
     tables: Mapping[str, Table]
     evidence: tuple[str, ...]
+    warnings: tuple[str, ...]
     steps: tuple[Step, ...]
     missing: Mapping[str, str]
     provenance: Provenance
@@ -103,6 +107,7 @@ def content_of(answers: Answers, *, command: str = "", progress: Progress = sile
         drawings=drawings,
         tables=_tables(answers, runs, shares),
         evidence=evidence(answers, runs),
+        warnings=tuple(warning for warning in answers.warnings if warning != BLIND_SPOT),
         steps=next_steps(answers, runs),
         missing=_missing(answers, runs, drawings),
         provenance=origin,

@@ -7,7 +7,7 @@ import json
 import re
 import warnings
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from html import escape
 
 from matplotlib.axes import Axes
@@ -15,7 +15,7 @@ from matplotlib.figure import Figure
 
 from armeval.plots.style import quiet_style
 
-WIDE, NARROW = 9.0, 3.75
+WIDE, NARROW = 8.0, 3.75
 """Widths [inches] of a figure on a page and on a hand-held screen."""
 
 _HEAD = re.compile(r"^.*?(?=<svg)", re.DOTALL)
@@ -38,7 +38,7 @@ class Drawing:
     caption
         What it shows, in a sentence or two.
     wide, narrow
-        SVG elements for a page and for a hand-held screen.
+        SVG elements for a page and for a hand-held screen; ``narrow`` is empty where the wide one does for both.
     file
         The wide figure as an SVG file of its own.
     png
@@ -70,7 +70,7 @@ class Plan:
     kind
         Class of the SVG element.
     wide, narrow
-        Widths [inches].
+        Widths [inches]; without a narrow one the wide one does for both.
     """
 
     name: str
@@ -80,8 +80,7 @@ class Plan:
     data: Callable[[Figure], Mapping[str, object]] | None = None
     kind: str = "plain"
     wide: float = WIDE
-    narrow: float = NARROW
-    notes: Mapping[str, str] = field(default_factory=dict)
+    narrow: float | None = NARROW
 
 
 def render(plan: Plan) -> Drawing:
@@ -92,10 +91,13 @@ def render(plan: Plan) -> Drawing:
         figure = plan.draw(plan.wide)
         raw = _svg(figure)
         wide = _inline(raw, f"{plan.name}-w", plan, figure)
+        figure.set_layout_engine("none")  # its places are found; the second drawing keeps them
         png = io.BytesIO()
         figure.savefig(png, format="png", metadata={"Software": None})
-        slim = plan.draw(plan.narrow)
-        narrow = _inline(_svg(slim), f"{plan.name}-n", plan, slim)
+        narrow = ""
+        if plan.narrow is not None:
+            slim = plan.draw(plan.narrow)
+            narrow = _inline(_svg(slim), f"{plan.name}-n", plan, slim)
     return Drawing(plan.name, plan.caption, wide, narrow, _rounded(raw), png.getvalue())
 
 

@@ -11,16 +11,18 @@ from matplotlib.figure import Figure
 from armeval.evaluate.along_path import ErrorAlongPath, error_along_path
 from armeval.evaluate.cog_orders import expected_orders
 from armeval.evaluate.error_orders import ErrorOrders, error_orders
+from armeval.evaluate.regions import Region
 from armeval.kernels.chain import skeletons
 from armeval.plots.along_path import along_path_plot
 from armeval.plots.cog_map import cog_map_plot
 from armeval.plots.error_orders import error_orders_plot
 from armeval.plots.event import event_angle_plot, event_torque_plot
-from armeval.plots.path import mark_stretch, path_plot, widest_plane
+from armeval.plots.path import mark_stretch, path_plot
 from armeval.plots.pose import pose_plot
-from armeval.plots.sticking import joint_strip, region_lanes
-from armeval.plots.style import figure
+from armeval.plots.sticking import joint_strip, region_lanes, strip_handles
+from armeval.plots.style import figure, label_text, strip_figure
 from armeval.plots.summary import SummaryRow, summary_plot
+from armeval.plots.view import broad_view, side_view
 from armeval.report.answers import Answers
 from armeval.report.drawing import NARROW, Plan, box, data_map
 from armeval.report.shown import ShownRun
@@ -31,29 +33,48 @@ NUMBERED = 6
 
 def path_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
     """Plan the path with target, before and after, and the numbered regions."""
+    plan = answers.trajectory
+    view = broad_view(plan.path)
+    extent = [float(np.ptp(side)) for side in view.of(plan.path)]
+    shape = min(0.9, max(0.45, 0.15 + extent[1] / max(extent[0], 1e-9)))
+    together = numbers_together(runs[0].sticking.regions[:NUMBERED], 0.03 * plan.length)
 
     def draw(width: float) -> Figure:
-        made = figure(width, 0.74 * width if width > NARROW else 0.95 * width)
+        made = figure(width, shape * width)
         ax = made.subplots()
-        for number, region in enumerate(runs[0].sticking.regions[:NUMBERED], start=1):
-            mark_stretch(
-                ax, answers.trajectory, region.start_arc, region.end_arc, f"{number}", color=runs[0].stroke.color
-            )
-        path_plot(answers.trajectory, [run.errors for run in runs], ax, strokes=[run.stroke for run in runs])
+        for name, regions in together.items():
+            for region in regions:
+                label = name if region is regions[0] else ""
+                mark_stretch(ax, plan, region.start_arc, region.end_arc, label, color=runs[0].stroke.color, view=view)
+        path_plot(plan, [run.errors for run in runs], ax, strokes=[run.stroke for run in runs], view=view)
         made.legend(*ax.get_legend_handles_labels(), loc="outside upper left", ncols=3)
         return made
 
     names = " and ".join(run.name for run in runs)
+    numbered = " Numbers mark where sticking does most harm, as in the table of regions." if together else ""
     return Plan(
         "path",
-        "The planned path in grey, and the first lap of each run over it, at true scale. Numbers mark the stretches "
-        "where sticking does most harm; they are the numbers of the table of regions.",
+        f"The planned path in grey, and the first lap of each run over it, at true scale.{numbered}",
         draw,
         f"The planned path with the first lap of {names} over it, regions of sticking numbered.",
-        data=lambda made: {"map": data_map(made.axes[0]), "plane": widest_plane(answers.trajectory.path)},
+        data=lambda made: {"map": data_map(made.axes[0]), "view": view.to_document()},
         kind="map",
         wide=6.2,
     )
+
+
+def numbers_together(regions: Sequence[Region], reach: float) -> dict[str, list[Region]]:
+    """Gather regions that lie within reach [m] of each other, by their numbers: ``1``, ``2, 3, 6``, ``4``."""
+    groups: list[list[int]] = []
+    for k, region in enumerate(regions):
+        for group in groups:
+            first = regions[group[0]]
+            if region.start_arc - reach <= first.end_arc and first.start_arc - reach <= region.end_arc:
+                group.append(k)
+                break
+        else:
+            groups.append([k])
+    return {", ".join(f"{k + 1}" for k in group): [regions[k] for k in group] for group in groups}
 
 
 def summary_figure(runs: Sequence[ShownRun]) -> Plan:
@@ -75,6 +96,7 @@ def summary_figure(runs: Sequence[ShownRun]) -> Plan:
         draw,
         "RMS tracking error: " + "; ".join(f"{row.label} {1e3 * row.error.rms:.2f} mm" for row in rows),
         wide=4.6,
+        narrow=None,
     )
 
 
@@ -82,27 +104,26 @@ def along_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
     """Plan the error of the runs against path length, measured over predicted, with the regions beneath."""
     length = answers.trajectory.length
     measured = [run for run in runs if run.source == "log"]
-    ratios = ([2.0] if measured else []) + [1.4, 0.34 * len(runs) + 0.3]
+    heights = ([1.9] if measured else []) + [1.3, 0.26 * len(runs) + 0.22]
+    together = numbers_together(runs[0].sticking.regions[:NUMBERED], 0.02 * length)
+    numbers = {name: _middle(regions) for name, regions in together.items()}
 
     def draw(width: float) -> Figure:
-        made = figure(width, 1.15 * sum(ratios) + 0.5)
-        axes = list(made.subplots(len(ratios), 1, sharex=True, height_ratios=ratios, squeeze=False)[:, 0])
-        predicted = axes[-2]
+        made, axes = strip_figure(width, heights, above=0.3)
         for run in measured:
             along_path_plot(along(run, length), axes[0], stroke=run.stroke, label=run.name)
         for run in runs:
             expected = error_along_path(run.predicted.errors.tracks, length)
-            along_path_plot(expected, predicted, stroke=run.stroke, label=run.name)
+            along_path_plot(expected, axes[-2], stroke=run.stroke, label=run.name)
         top = max(ax.get_ylim()[1] for ax in axes[:-1])
         for ax, told in zip(axes[:-1], ["measured", "predicted"] if measured else ["predicted"], strict=True):
             ax.set_ylim(0.0, top)
             ax.set_ylabel(f"{told}\nerror [mm]")
             ax.set_xlabel("")
-        axes[0].legend(loc="upper right", ncols=2)
-        lanes = [(run.name, run.sticking.regions, run.stroke) for run in runs]
-        numbers = {k: k + 1 for k in range(min(NUMBERED, len(runs[0].sticking.regions)))}
-        region_lanes(lanes, axes[-1], length=length, numbers=numbers)
-        _strip_axes(made)
+        made.legend(*axes[0].get_legend_handles_labels(), loc="upper right", ncols=2, borderaxespad=0.2)
+        region_lanes(
+            [(run.name, run.sticking.regions, run.stroke) for run in runs], axes[-1], length=length, numbers=numbers
+        )
         return made
 
     told = "Upper: measured, a line over all laps and a band from the best lap to the worst; below: predicted; "
@@ -122,8 +143,7 @@ def joints_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
     length, joints = answers.trajectory.length, answers.trial.arm.joints
 
     def draw(width: float) -> Figure:
-        made = figure(width, 1.25 * len(joints) + 0.5)
-        axes = made.subplots(len(joints), 1, sharex=True, squeeze=False)[:, 0]
+        made, axes = strip_figure(width, [1.0] * len(joints), above=0.3 if width > NARROW else 0.5)
         for joint, ax in zip(joints, axes, strict=True):
             joint_strip(
                 joint,
@@ -134,13 +154,15 @@ def joints_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
             )
             if ax is not axes[-1]:
                 ax.set_xlabel("")
-        _strip_axes(made)
+        handles = [handle for run in runs for handle in strip_handles(run.name, run.stroke)]
+        columns = 4 if width > NARROW else 2
+        made.legend(handles=handles, loc="upper right", ncols=columns, borderaxespad=0.2)
         return made
 
     return Plan(
         "joints",
-        "Lines: sticking ratio of each joint; above the dotted line at 1 it sticks when moved slowly enough. Bars above "
-        "the lines: rests of all laps, filled before, outlined after compensation.",
+        "Lines: sticking ratio of each joint; above the dotted line at 1 it sticks when moved slowly enough. Bars "
+        "above the lines: rests of all laps, filled before, outlined after compensation.",
         draw,
         "Sticking ratio and rests of every joint against path length.",
         data=lambda made: _strip_data(made, length),
@@ -150,18 +172,18 @@ def joints_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
 
 def pose_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
     """Plan the arm in its pose at the worst region, from one side or two."""
-    plan = answers.trajectory
+    plan, chain = answers.trajectory, answers.trial.arm.chain
     worst = runs[0].sticking.regions[0].start_arc if runs[0].sticking.regions else 0.0
-    at = int(np.searchsorted(plan.arc, worst))
-    skeleton = skeletons(answers.trial.arm.chain.arrays, plan.joint[at : at + 1])[0]
-    planes = pose_planes(answers)
+    at = min(int(np.searchsorted(plan.arc, worst)), len(plan.arc) - 1)
+    skeleton = skeletons(chain.arrays, np.ascontiguousarray(plan.joint[at : at + 1]))[0]
+    front = broad_view(plan.path)
+    side = side_view(skeleton, front)
+    views = [front] if side is None else [front, side]
 
     def draw(width: float) -> Figure:
-        side_by_side = width > 3.0
-        made = figure(width, (0.6 if side_by_side and len(planes) > 1 else 0.9 * len(planes)) * width)
-        shape = (1, len(planes)) if side_by_side else (len(planes), 1)
-        for k, (plane, ax) in enumerate(zip(planes, made.subplots(*shape, squeeze=False).flat, strict=True)):
-            pose_plot(plan.path, skeleton, plane, ax)
+        made = figure(width, 0.8 * width * len(views))
+        for k, (view, ax) in enumerate(zip(views, made.subplots(len(views), 1, squeeze=False).flat, strict=True)):
+            pose_plot(plan.path, skeleton, ax, view=view)
             ax.lines[1].set_gid(f"arm-{k}")
             ax.lines[2].set_gid(f"arm-joints-{k}")
         return made
@@ -172,23 +194,12 @@ def pose_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
         draw,
         "The arm in its pose, drawn through its joints, and the path.",
         data=lambda made: {
-            "views": [{"plane": plane, "map": data_map(ax)} for plane, ax in zip(planes, made.axes, strict=True)]
+            "views": [{**view.to_document(), "map": data_map(ax)} for view, ax in zip(views, made.axes, strict=True)]
         },
         kind="pose",
         wide=2.9,
+        narrow=None,
     )
-
-
-def pose_planes(answers: Answers) -> list[list[int]]:
-    """Give the pairs of base axes in which the arm is drawn: the path's plane, and from the side if it is not flat."""
-    plan = answers.trajectory
-    points = skeletons(answers.trial.arm.chain.arrays, plan.joint[:: max(1, len(plan.joint) // 50)]).reshape(-1, 3)
-    first = widest_plane(plan.path)
-    third = next(axis for axis in range(3) if axis not in first)
-    if np.ptp(points[:, third]) < 1e-3:
-        return [first]
-    wider = first[int(np.argmax(np.ptp(points[:, first], axis=0)))]
-    return [first, sorted([wider, third])]
 
 
 def cog_maps_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan | None:
@@ -215,13 +226,14 @@ def cog_maps_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan | None:
             ]
             if drive.cog_map is not None:
                 cog_map_plot(drive.cog_map, ax, rests=rests)  # type: ignore[arg-type]
-            ax.set_title(drive.joint)
+                reach = f"{1e3 * float(np.abs(drive.cog_map.torque).max()):.3g} mN·m"
+                ax.set_title(f"{label_text(drive.joint, 20)}, rings at ±{reach} and 0")
         return made
 
     return Plan(
         "cog-maps",
-        "Cogging torque [mN·m] of each motor over one turn, outward positive; the rings carry the motor angles at which "
-        "the joint rested, in every lap.",
+        "Cogging torque [mN·m] of each motor over one turn, outward positive; the rings carry the motor angles at "
+        "which the joint rested, in every lap.",
         draw,
         "Cog map of every joint's motor with the angles of its rests.",
     )
@@ -238,9 +250,7 @@ def spectra(answers: Answers, runs: Sequence[ShownRun]) -> dict[str, list[tuple[
     return found
 
 
-def orders_figure(
-    answers: Answers, found: Mapping[str, list[tuple[ShownRun, ErrorOrders]]]
-) -> Plan | None:
+def orders_figure(answers: Answers, found: Mapping[str, list[tuple[ShownRun, ErrorOrders]]]) -> Plan | None:
     """Plan the spectrum of every joint's error; None where no joint turned far enough."""
     if not found:
         return None
@@ -265,8 +275,8 @@ def orders_figure(
 
     return Plan(
         "orders",
-        "Amplitude of each joint's error by order of motor angle, over all laps. Dotted: the orders that slots and poles "
-        "let expect of cogging.",
+        "Amplitude of each joint's error by order of motor angle, over all laps. Dotted: the orders that slots and "
+        "poles let expect of cogging.",
         draw,
         "Spectrum of the joint error by order of motor angle for every joint.",
     )
@@ -278,7 +288,7 @@ def event_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan | None:
     if run is None:
         return None
     region = run.sticking.regions[0]
-    event = max(region.events, key=lambda event: event.lag)
+    event = max(region.events, key=lambda event: event.dwell * event.release_distance)
     track = next(track for track in run.errors.tracks if track.lap == event.lap)
     index = answers.trial.arm.chain.index(event.joint)
     slides = bool(answers.trial.arm.chain.prismatic[index])
@@ -298,7 +308,8 @@ def event_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan | None:
     missing = "" if with_torque else " Torque was not logged."
     return Plan(
         "event",
-        f"One rest close up: {event.joint} in region 1 ({place}), {run.name}, lap {event.lap}. Shaded: the rest.{missing}",
+        f"One rest close up: {event.joint} in region 1 ({place}), {run.name}, lap {event.lap}. Shaded: the rest."
+        f"{missing}",
         draw,
         f"Target, angle and torque of {event.joint} through one rest.",
     )
@@ -309,11 +320,8 @@ def along(run: ShownRun, length: float) -> ErrorAlongPath:
     return error_along_path(run.errors.tracks, length)
 
 
-def _strip_axes(made: Figure) -> None:
-    for k, ax in enumerate(made.axes):
-        ax.xaxis.set_gid(f"x-axis-{k}")
-        ax.label_outer()
-    made.align_ylabels()
+def _middle(regions: Sequence[Region]) -> float:
+    return 0.5 * (min(region.start_arc for region in regions) + max(region.end_arc for region in regions))
 
 
 def _strip_data(made: Figure, length: float) -> Mapping[str, object]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections import Counter
 from collections.abc import Sequence
 
@@ -124,15 +125,21 @@ def fates_of(answers: Answers, runs: Sequence[ShownRun]) -> tuple[Counterpart, .
 
 def blame_text(runs: Sequence[ShownRun], shares: Sequence[tuple[JointShare, ...]]) -> str:
     """Say which joint carries most of the tip error, before and after."""
-    told = []
-    for run, of_joints in zip(runs, shares, strict=True):
-        known = [share for share in of_joints if share.share == share.share]
-        if known:
-            worst = max(known, key=lambda share: share.share)
-            told.append(f"{worst.joint} carries {percent(worst.share)} of the squared tip error in {run.name}")
+    worst = [(run.name, _largest(of_joints)) for run, of_joints in zip(runs, shares, strict=True)]
+    told = [(name, share) for name, share in worst if share is not None]
     if not told:
         return "No joint strays."
-    return _sentence("; ".join(told))
+    joints = {share.joint for _, share in told}
+    if len(joints) == 1:
+        parts = ", ".join(f"{percent(share.share)} in {name}" for name, share in told)
+        return f"{told[0][1].joint} carries most of the squared tip error: {parts}."
+    parts = ", ".join(f"{share.joint} in {name} ({percent(share.share)})" for name, share in told)
+    return f"Most of the squared tip error goes through {parts}."
+
+
+def _largest(shares: Sequence[JointShare]) -> JointShare | None:
+    known = [share for share in shares if math.isfinite(share.share)]
+    return max(known, key=lambda share: share.share) if known else None
 
 
 def worst_text(run: ShownRun) -> str:
@@ -143,10 +150,6 @@ def worst_text(run: ShownRun) -> str:
     place = f"{1e3 * region.start_arc:.0f} to {1e3 * region.end_arc:.0f} mm along the path"
     rests = f"rests {1e3 * region.dwell:.0f} ms in {region.laps} of {region.of_laps} laps"
     return (
-        f"Most harm in {run.name}: {region.joint} at {place}, {rests}, "
+        f"{region.joint} at {place} in {run.name}: {rests}, "
         f"{significant(100.0 * region.harm, 2)} % of the squared tip error."
     )
-
-
-def _sentence(text: str) -> str:
-    return f"{text[0].upper()}{text[1:]}."

@@ -27,7 +27,7 @@
     });
     const fixed = [...svg.querySelectorAll('[id*="x-axis"] text, [id*="region-number"]')];
     const ticks = [...svg.querySelectorAll('[id*="x-axis"] use')];
-    const lines = boxes.map(([, top, , bottom]) => add(svg, "line", { class: "cursor", y1: top, y2: bottom, visibility: "hidden" }));
+    const lines = boxes.map(([, top, , bottom]) => add(svg, "line", { class: "cursor linked", y1: top, y2: bottom, visibility: "hidden" }));
     const labels = add(svg, "g", {});
     svg.setAttribute("tabindex", "0");
     svg.setAttribute("role", "slider");
@@ -38,16 +38,16 @@
 
   const maps = [...document.querySelectorAll("svg.map")].map((svg) => ({
     map: JSON.parse(svg.dataset.map),
-    plane: JSON.parse(svg.dataset.plane),
+    view: JSON.parse(svg.dataset.view),
     marks: data.runs.map((run) => add(svg, "circle", {
-      r: 4, fill: run.mark === "before" ? "#b34700" : "#0063a6", stroke: "#ffffff", "stroke-width": 1, visibility: "hidden",
+      r: 4, fill: run.mark === "before" ? "#b34700" : "#0063a6", stroke: "#ffffff", "stroke-width": 1, visibility: "hidden", class: "linked",
     })),
-    aim: add(svg, "circle", { r: 6, fill: "none", stroke: "#22262a", "stroke-width": 1.4, visibility: "hidden", class: "aim" }),
+    aim: add(svg, "circle", { r: 6, fill: "none", stroke: "#22262a", "stroke-width": 1.4, visibility: "hidden", class: "aim linked" }),
   }));
 
   const poses = [...document.querySelectorAll("svg.pose")].map((svg) =>
-    JSON.parse(svg.dataset.views).map(({ plane, map }, k) => ({
-      plane, map,
+    JSON.parse(svg.dataset.views).map(({ across, up, map }, k) => ({
+      across, up, map,
       arm: svg.querySelector(`[id$="-arm-${k}"] path`),
       joints: [...svg.querySelectorAll(`[id$="-arm-joints-${k}"] use`)],
     }))).flat();
@@ -69,9 +69,9 @@
       svg.setAttribute("aria-valuetext", `${s.toFixed(0)} mm along the path`);
     }
     const tip = points.slice(-3);
-    for (const { map, plane, marks, aim } of maps) {
+    for (const { map, view, marks, aim } of maps) {
       const put = (mark, point) => {
-        const [x, y] = at(map, point[plane[0]], point[plane[1]]);
+        const [x, y] = at(map, point[view.across], point[view.up]);
         mark.setAttribute("cx", x);
         mark.setAttribute("cy", y);
         mark.setAttribute("visibility", "visible");
@@ -79,9 +79,9 @@
       put(aim, tip);
       data.runs.forEach((run, k) => put(marks[k], run.tip[place]));
     }
-    for (const { plane, map, arm, joints } of poses) {
+    for (const { across, up, map, arm, joints } of poses) {
       const corners = [];
-      for (let k = 0; k < points.length; k += 3) corners.push(at(map, points[k + plane[0]], points[k + plane[1]]));
+      for (let k = 0; k < points.length; k += 3) corners.push(at(map, points[k + across], points[k + up]));
       arm.setAttribute("d", "M" + corners.map((c) => c.join(" ")).join("L"));
       joints.forEach((joint, k) => {
         joint.setAttribute("x", corners[k][0]);
