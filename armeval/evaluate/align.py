@@ -202,7 +202,10 @@ def _scan(
     log: JointLog, trajectory: Trajectory, arm: Arm, earliest: float, latest: float, period: float
 ) -> tuple[float, FloatArray]:
     """Mean squared distance at every offset of a grid from the earliest to the latest; the grid's step first."""
-    step = max(period, min(float(log.time[-1] - log.time[0]) / 16384, trajectory.duration / 1024))
+    span = float(log.time[-1] - log.time[0])
+    stretch = float(np.median(np.diff(np.interp(trajectory.corners, trajectory.arc, trajectory.time))))
+    # Fine against a stretch, so that no minimum falls between two offsets; no finer than the log; at most a million.
+    step = max(period, min(span / 16384, trajectory.duration / 1024, stretch / 8), span / (1 << 20))
     lags = int(np.ceil((latest - earliest) / step - 1e-9))
     step = float((latest - earliest) / lags) if lags else step
     count = max(2, int(np.floor(trajectory.duration / step + 1e-9)) + 1)

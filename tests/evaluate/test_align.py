@@ -77,6 +77,14 @@ def test_no_other_offset_has_a_lower_rms(shape):
     assert rms_at(log, trajectory, found.time_offset) <= best * (1.0 + 1e-6)
 
 
+def test_a_long_log_of_many_short_stretches_is_not_misplaced_by_one():
+    teeth = np.arange(3001)
+    zigzag = np.column_stack([1e-5 * teeth, 4e-3 * (teeth % 2), 0.0 * teeth])
+    trajectory = along(zigzag, feed=0.1, period=4e-3)
+    log = recorded(trajectory, offset=31.4, early=20.0, late=35.0, noise=1e-3, rate=250.0)
+    assert align_to_plan(log, trajectory, ARM).time_offset == pytest.approx(31.4, abs=2e-3)
+
+
 def test_a_lagging_arm_is_found_late_by_its_lag():
     trajectory = along(eight(), rest=0.5)
     log = recorded(trajectory, offset=5.02, early=2.0, late=2.0, noise=1e-5)
