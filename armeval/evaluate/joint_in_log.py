@@ -1,4 +1,4 @@
-"""One joint as a log and the arm's model show it: counts, targets, servo torque, inertia, friction and cogging slope."""
+"""One joint as a log and the arm's model show it: counts, targets, servo torque, inertia, friction, cogging slope."""
 
 from __future__ import annotations
 
@@ -6,9 +6,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from armeval.arrays import FloatArray
+from armeval.arrays import BoolArray, FloatArray, IntArray
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.servo_torque import servo_pull, servo_torque
+from armeval.evaluate.servo_torque import servo_torque
 from armeval.kernels.periodic import hermite_table
 from armeval.model.arm import Arm
 from armeval.model.drive import Drive
@@ -74,7 +74,7 @@ def joints_in_log(arm: Arm, track: LapTrack) -> tuple[JointInLog, ...]:
     told = target_speed(track)[::stride]
     period = float(np.median(np.diff(time)))
     torque = servo_torque(arm, period, angle, target, told)
-    inertia, stiffness = _along(arm, angle)
+    inertia, stiffness = _inertia_along(arm, angle), joint_stiffness_along(arm, angle)
     return tuple(
         _joint(track, j, drive, time, angle, target, told, torque, inertia, stiffness)
         for j, drive in enumerate(arm.drives)
@@ -123,21 +123,73 @@ def _joint(
     )
 
 
-def _along(arm: Arm, angle: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Inertia [kg m^2] and stiffness [N m/rad] of each joint with the others held, at every sample."""
+def joint_stiffness_along(arm: Arm, angle: FloatArray) -> FloatArray:
+    """Stiffness of each joint with the others held, along a lap: angle of shape (k, n) gives (k, n) [N m/rad]."""
     from armeval.evaluate.sticking_ratio import joint_stiffness
+
+    at, poses = _some_poses(angle)
+    K = np.einsum("pjj->pj", joint_stiffness(arm, poses, np.zeros_like(poses)))
+    return np.maximum(_between(at, K, len(angle)), 1e-9)
+
+
+def friction_alone(arm: Arm, track: LapTrack, stiffness: FloatArray) -> BoolArray:
+    """Where each joint would rest if only friction opposed its servo, along a lap: shape (k, n).
+
+    Parameters
+    ----------
+    arm, track
+        The arm and the lap; of the lap only the targets count, and the poses.
+    stiffness
+        Shape (k, n) [N m/rad], from :func:`joint_stiffness_along`.
+    """
+    from armeval.kernels.friction_alone import rests_by_friction
+
+    told, inertia, damping = target_speed(track), _inertia_along(arm, track.angle), _damping_along(arm, track.angle)
+    rests = [
+        rests_by_friction(
+            track.time,
+            np.ascontiguousarray(track.target[:, j]),
+            np.ascontiguousarray(told[:, j]),
+            np.ascontiguousarray(inertia[:, j]),
+            np.ascontiguousarray(stiffness[:, j]),
+            np.ascontiguousarray(damping[:, j]),
+            drive.coulomb_friction,
+            drive.breakaway_friction,
+            drive.stribeck_speed,
+        )
+        for j, drive in enumerate(arm.drives)
+    ]
+    return np.stack(rests, axis=1)
+
+
+def _damping_along(arm: Arm, angle: FloatArray) -> FloatArray:
+    if arm.servo.law == "joint_pd":
+        return np.tile([drive.damping + drive.viscous_friction for drive in arm.drives], (len(angle), 1))
+    from armeval.kernels.chain import tip_jacobians
+
+    at, poses = _some_poses(angle)
+    J = tip_jacobians(arm.chain.arrays, poses)
+    return _between(at, np.einsum("pcj,c,pcj->pj", J, np.asarray(arm.servo.tip_damping), J), len(angle))
+
+
+def _inertia_along(arm: Arm, angle: FloatArray) -> FloatArray:
+    """Inertia of each joint with the others held, rotors included, along a lap: shape (k, n) [kg m^2]."""
     from armeval.kernels.dynamics import mass_matrix_and_bias
 
-    at = np.unique(np.linspace(0, len(angle) - 1, _POSES).astype(np.int64))
-    poses = np.ascontiguousarray(angle[at])
+    at, poses = _some_poses(angle)
     M, _, _ = mass_matrix_and_bias(arm.chain.arrays, np.array(arm.gravity), poses, np.zeros_like(poses))
     rotor = np.array([drive.gear_ratio**2 * drive.rotor_inertia for drive in arm.drives])
-    K = joint_stiffness(arm, poses, np.zeros_like(poses))
-    where = np.arange(len(angle))
-    n = angle.shape[1]
-    inertia = np.stack([np.interp(where, at, M[:, j, j] + rotor[j]) for j in range(n)], axis=1)
-    stiffness = np.stack([np.interp(where, at, K[:, j, j]) for j in range(n)], axis=1)
-    return np.maximum(inertia, 1e-9), np.maximum(stiffness, 1e-9)
+    return np.maximum(_between(at, np.einsum("pjj->pj", M) + rotor, len(angle)), 1e-9)
+
+
+def _some_poses(angle: FloatArray) -> tuple[IntArray, FloatArray]:
+    at = np.unique(np.linspace(0, len(angle) - 1, _POSES).astype(np.int64))
+    return at, np.ascontiguousarray(angle[at])
+
+
+def _between(at: IntArray, values: FloatArray, k: int) -> FloatArray:
+    where = np.arange(k)
+    return np.stack([np.interp(where, at, column) for column in values.T], axis=1)
 
 
 def _smallest_step(angle: FloatArray) -> float:

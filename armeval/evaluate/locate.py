@@ -218,7 +218,7 @@ def locate(
         first = laps[0]
         counterfactual = (counterfactuals or {}).get(first.run) if first.source == "prediction" else None
         events = [event for track in laps for event in sticking_events(arm, track, rule)]
-        events = find_causes(arm, laps, events, compensation=compensation, counterfactual=counterfactual)
+        events = find_causes(arm, laps, events, rule=rule, compensation=compensation, counterfactual=counterfactual)
         merged = tuple(
             replace(region, action=action(arm, region, laps, compensation=compensation))
             for region in regions(laps, events)

@@ -139,15 +139,15 @@ def regions(tracks: Sequence[LapTrack], events: Sequence[StickingEvent]) -> tupl
     rests = [event for event in events if event.kind == "rest"]
     found: list[Region] = []
     for joint in dict.fromkeys(event.joint for event in rests):
-        same = sorted((event for event in rests if event.joint == joint), key=lambda event: event.start_arc)
-        found.extend(_region(tracks, group) for group in _merged(same))
+        same = [event for event in rests if event.joint == joint]
+        found.extend(_region(tracks, group) for group in same_places(same))
     return tuple(sorted(found, key=lambda region: -region.harm))
 
 
-def _merged(events: Sequence[StickingEvent]) -> list[list[StickingEvent]]:
-    """Group the rests of one joint that overlap along the path, and neighbours in other laps within reach."""
+def same_places(events: Sequence[StickingEvent]) -> list[list[StickingEvent]]:
+    """Group the rests of one joint that overlap along the path, and those of other laps within a millimetre."""
     groups: list[list[StickingEvent]] = []
-    for event in events:
+    for event in sorted(events, key=lambda event: event.start_arc):
         for group in reversed(groups):
             if any(_same_place(event, other) for other in group):
                 group.append(event)

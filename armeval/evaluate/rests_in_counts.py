@@ -22,7 +22,7 @@ from armeval.kernels.still import within_width
 from armeval.model.trial import StickingRule
 
 LEAST_COUNTS = 2.8
-"""While its counts stay, a joint's target must move by this many: a rest of three counts, less rounding at both ends."""
+"""While it rests, a joint's target must move by this many counts: three, less what rounding takes at both ends."""
 
 _PARTICLES = 2048
 _LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.060, 0.010  # s of the log before and after the still counts that are looked at
@@ -151,7 +151,7 @@ def _misfit(jitter: float) -> FloatArray:
 
 
 def _rest_probability(joint: JointInLog, rule: StickingRule) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Probability of rest at every sample, and mean and spread [counts] of the angle there."""
+    """Give the probability of rest at every sample, and mean and spread [counts] of the angle there."""
     k = len(joint.time)
     probability, angle, scatter = np.zeros(k), joint.counts.copy(), np.zeros(k)
     told = np.abs(joint.told) >= rule.least_target_speed
@@ -192,7 +192,7 @@ def _rest_probability(joint: JointInLog, rule: StickingRule) -> tuple[FloatArray
 
 
 def _window(joint: JointInLog, hold: IntArray) -> IntArray:
-    """Samples to follow: the still counts with what leads to them and what follows."""
+    """Choose the samples to follow: the still counts with what leads to them and what follows."""
     first, stop = int(hold[0]), min(int(hold[1]), len(joint.time) - 1)
     time = joint.time
     start = int(np.searchsorted(time, time[first] - _LEAD))
@@ -208,7 +208,7 @@ def _window(joint: JointInLog, hold: IntArray) -> IntArray:
 
 
 def _prior(joint: JointInLog, start: int, hold: IntArray, jitter: float) -> RestPrior:
-    """What to think of the joint at the start of a window, from the counts about it and from the arm."""
+    """Say what to think of the joint at the start of a window, from the counts about it and from the arm."""
     before, after = (int(i) for i in np.searchsorted(joint.time, joint.time[start] + np.array([-0.012, 0.012])))
     after = min(max(after, before + 1), len(joint.time) - 1)
     span = joint.time[after] - joint.time[before]
@@ -236,7 +236,7 @@ def _prior(joint: JointInLog, start: int, hold: IntArray, jitter: float) -> Rest
 
 
 def _place(joint: JointInLog, start: int, jitter: float) -> tuple[float, float]:
-    """Angle [counts] at the start of a window, and half the width of what it may be."""
+    """Give the angle [counts] at the start of a window, and half the width of what it may be."""
     counts = joint.counts
     if jitter >= _NO_JITTER:
         near = counts[max(start - 2, 0) : start + 3]

@@ -1,4 +1,4 @@
-"""Did a joint rest, or only move slowly? Many simulated joints follow one stretch of a log; those that contradict it die.
+"""Rest or slow motion? Many simulated joints follow one stretch of a log, and those that contradict it die out.
 
 A particle filter (Gordon, Salmond & Smith 1993) over one joint with dry friction under a known servo torque. Each
 particle is one way in which the joint may have moved: angle, speed and torque at the start, its inertia, friction and
@@ -226,11 +226,11 @@ def rest_probability(
         total += w
         for r in range(_MOST_RESTS):
             slot = _SLOTS + 3 * r
-            first, last, angle = int(P[p, slot]), int(P[p, slot + 1]), P[p, slot + 2]
+            begin, last, angle = int(P[p, slot]), int(P[p, slot + 1]), P[p, slot + 2]
             if last > 0:
                 term = w
                 for c in range(3):
-                    result[c, first] += term
+                    result[c, begin] += term
                     result[c, last] -= term
                     term *= angle
     for c in range(3):
