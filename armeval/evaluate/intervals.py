@@ -22,6 +22,7 @@ import numpy as np
 from scipy import stats
 
 from armeval.arrays import FloatArray, IntArray
+from armeval.errors import InputError
 from armeval.kernels.block_bootstrap import studentised_shifts
 from armeval.kernels.moments import squares_in_bins
 
@@ -30,9 +31,9 @@ METHOD = (
     "Politis & White (2004) as corrected in 2009; the same blocks are drawn from all laps (and from both runs of a "
     "reduction), and a spread between laps beyond what their blocks explain widens the interval"
 )
-BINS = 1000
-DRAWS = 999
-MOST_BLOCKS = 250
+_BINS = 1000
+_DRAWS = 999
+_MOST_BLOCKS = 250
 _LAPS_DIFFER = 0.99
 
 
@@ -138,14 +139,17 @@ def rms_interval(laps: Sequence[FloatArray], *, level: float = 0.95, seed: int =
 def rms_bootstrap(laps: Sequence[FloatArray], *, level: float = 0.95, seed: int = 0) -> Interval:
     """Give the interval of :func:`rms_interval` with the effective sample size and block length it rests on."""
     laps = [lap for lap in laps if len(lap)]
-    bins = min([BINS, *(len(lap) for lap in laps)])
+    if not laps:
+        raise InputError("there is no sample to sum up", "log at least one whole lap")
+    bins = min([_BINS, *(len(lap) for lap in laps)])
     binned = _Binned.of(laps, [np.linspace(0, len(lap), bins + 1).astype(np.int64) for lap in laps])
-    theta, low, high, variance, block = _bootstrap([binned], [1.0], level, seed)
-    mean_square = float(np.exp(theta))
+    found = _bootstrap([binned], [1.0], level, seed)
+    mean_square = float(np.exp(found.value))
     spread = binned.fourth_moment - mean_square**2
     samples = float(binned.count.sum())
-    effective = min(spread / (variance * mean_square**2), samples) if variance * mean_square > 0.0 else samples
-    return Interval(float(np.exp(0.5 * low)), float(np.exp(0.5 * high)), effective, block)
+    variance = found.variance * mean_square**2
+    effective = min(spread / variance, samples) if variance > 0.0 else samples
+    return Interval(float(np.exp(0.5 * found.low)), float(np.exp(0.5 * found.high)), effective, found.block)
 
 
 def reduction_interval(
@@ -174,7 +178,7 @@ def reduction_interval(
     Low and high end as fractions: 1 is an error that vanished, below 0 it has grown.
     """
     laps = [*before, *after]
-    bins = min([BINS, *(len(lap) for lap in laps)])
+    bins = min([_BINS, *(len(lap) for lap in laps)])
     if before_arcs is None or after_arcs is None:
         edges = [np.linspace(0, len(lap), bins + 1).astype(np.int64) for lap in laps]
     else:
@@ -182,8 +186,8 @@ def reduction_interval(
         places = np.linspace(min(arc[0] for arc in arcs), max(arc[-1] for arc in arcs), bins + 1)[1:-1]
         edges = [np.concatenate([[0], np.searchsorted(arc, places), [len(arc)]]).astype(np.int64) for arc in arcs]
     runs = [_Binned.of(before, edges[: len(before)]), _Binned.of(after, edges[len(before) :])]
-    _, low, high, _, _ = _bootstrap(runs, [-1.0, 1.0], level, seed)
-    return float(1.0 - np.exp(0.5 * high)), float(1.0 - np.exp(0.5 * low))
+    found = _bootstrap(runs, [-1.0, 1.0], level, seed)
+    return float(1.0 - np.exp(0.5 * found.high)), float(1.0 - np.exp(0.5 * found.low))
 
 
 @dataclass(frozen=True, eq=False)
@@ -202,14 +206,21 @@ class _Binned:
         return cls(np.array([squares for squares, _ in found]), count, fourth)
 
 
-def _bootstrap(
-    runs: Sequence[_Binned], signs: Sequence[float], level: float, seed: int
-) -> tuple[float, float, float, float, float]:
+class _LogInterval(NamedTuple):
+    """A sum of logarithms of mean squares, its ends and variance, and the block length as a share of the lap."""
+
+    value: float
+    low: float
+    high: float
+    variance: float
+    block: float
+
+
+def _bootstrap(runs: Sequence[_Binned], signs: Sequence[float], level: float, seed: int) -> _LogInterval:
     """Interval of theta = sum of sign * log(mean square) over runs, all runs and laps drawn at the same places.
 
-    Returns theta, its low and high end, its variance and the block length as a share of the lap. Studentising keeps the
-    coverage where few blocks are drawn and squared errors are skew; the variance is the flat-top estimate because the
-    variance between blocks is biased towards zero.
+    Studentising keeps the coverage where few blocks are drawn and squared errors are skew; the variance is the flat-top
+    estimate because the variance between blocks is biased towards zero.
     """
     total = np.array([run.total.sum(axis=0) for run in runs])
     count = np.array([run.count.sum(axis=0) for run in runs])
@@ -219,29 +230,29 @@ def _bootstrap(
     if (mean <= 0.0).any():
         with np.errstate(divide="ignore", invalid="ignore"):
             theta = float(np.nansum(sign * np.log(mean)))
-        return theta, theta, theta, 0.0, 1.0
+        return _LogInterval(theta, theta, theta, 0.0, 1.0)
     theta = float(np.sum(sign * np.log(mean)))
     if bins < 2:
-        return theta, float("nan"), float("nan"), float("nan"), 1.0
+        return _LogInterval(theta, float("nan"), float("nan"), float("nan"), 1.0)
     influence = np.sum(sign * (total - mean * count) / (mean * count.mean(axis=1, keepdims=True)), axis=0)
     chosen = block_length(influence)
-    length = max(1, round(chosen.circular), bins // MOST_BLOCKS)
+    length = max(1, round(chosen.circular), bins // _MOST_BLOCKS)
     variance = chosen.variance / bins / (1.0 - chosen.lags / bins)
     around = [
         np.cumsum(np.concatenate([np.zeros((len(x), 1)), x, x[:, :length]], axis=1), axis=1) for x in (total, count)
     ]
-    start = np.random.default_rng(seed).integers(0, bins, (DRAWS, -(-bins // length)))
+    start = np.random.default_rng(seed).integers(0, bins, (_DRAWS, -(-bins // length)))
     shifts = studentised_shifts(around[0], around[1], np.array(signs), start, length, bins)
     shifts = shifts[np.isfinite(shifts)]
     tail = 0.5 * (1.0 - level)
     below, above = np.quantile(shifts, [tail, 1.0 - tail]) if len(shifts) else (0.0, 0.0)
     laps_variance, laps_half = _between_laps(runs, length, level)
-    return (
-        theta,
-        theta - float(np.hypot(max(above, 0.0) * np.sqrt(variance), laps_half)),
-        theta + float(np.hypot(max(-below, 0.0) * np.sqrt(variance), laps_half)),
-        variance + laps_variance,
-        length / bins,
+    return _LogInterval(
+        value=theta,
+        low=theta - float(np.hypot(max(above, 0.0) * np.sqrt(variance), laps_half)),
+        high=theta + float(np.hypot(max(-below, 0.0) * np.sqrt(variance), laps_half)),
+        variance=variance + laps_variance,
+        block=length / bins,
     )
 
 
