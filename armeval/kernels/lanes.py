@@ -22,6 +22,8 @@ from numba.core.typing import signature
 from numba.extending import intrinsic, lower_builtin, lower_cast, models, overload, register_model, type_callable
 
 WIDTH = 8
+MARK = "lanes"
+"""Name of a field that only records with lanes have."""
 
 _DOUBLES = ir.VectorType(ir.DoubleType(), WIDTH)
 _BITS = ir.VectorType(ir.IntType(1), WIDTH)
@@ -253,7 +255,7 @@ def _take_own(tables: Any, row: int, entry: Any) -> Any:
 
 
 def with_lanes(records: Any) -> Any:
-    """Give the same records, in which every field that ends on an axis of eight is a field of lanes."""
+    """Give the same records; in those with a field :data:`MARK`, every field whose last axis is of eight is of lanes."""
     return records
 
 
@@ -262,7 +264,10 @@ def _with_lanes(records: Any) -> Any:
     def retyped(records: Any) -> Any:
         return _retype(records)
 
-    return retyped
+    def same(records: Any) -> Any:
+        return records
+
+    return retyped if MARK in records.dtype.fields else same
 
 
 class LaneRecord(types.Record):  # type: ignore[misc]

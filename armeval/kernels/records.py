@@ -8,12 +8,14 @@ reference counts nor checks for overlap, which at these step times cost more tha
 
 from __future__ import annotations
 
+import math
+
 import numpy as np
 import numpy.typing as npt
 
 from armeval.arrays import FloatArray
 from armeval.kernels.chain import ChainArrays
-from armeval.kernels.lanes import WIDTH, aligned_zeros
+from armeval.kernels.lanes import MARK, WIDTH, aligned_zeros
 
 Records = npt.NDArray[np.void]
 Fields = tuple[tuple[str, tuple[int, ...]], ...]
@@ -105,12 +107,10 @@ def _zeros(shape: tuple[int, ...], plain: Fields, laned: Fields = (), lanes: int
     row = () if lanes == 1 else (lanes,)
     fields = [(name, np.float64, (*size, *row)) for name, size in laned]
     fields += [(name, np.float64, size) for name, size in plain]
-    kind = np.dtype(fields, align=True)
     if lanes > 1:
-        names, formats = list(kind.names or ()), [kind[name] for name in kind.names or ()]
-        offsets = [kind.fields[name][1] for name in names] if kind.fields else []
-        whole = -(-kind.itemsize // 64) * 64
-        kind = np.dtype({"names": names, "formats": formats, "offsets": offsets, "itemsize": whole}, align=True)
+        # the field that tells, of a size that lets the next record start right too
+        fields.append((MARK, np.float64, (WIDTH - sum(math.prod(size) for _, size in plain) % WIDTH,)))
+    kind = np.dtype(fields, align=True)
     return aligned_zeros(shape, kind)
 
 

@@ -8,7 +8,7 @@ import pytest
 from armeval.arrays import FloatArray
 from armeval.kernels.compile import jit
 from armeval.kernels.elementary import decay, sine_cosine
-from armeval.kernels.lanes import WIDTH, aligned_zeros, with_lanes
+from armeval.kernels.lanes import MARK, WIDTH, aligned_zeros, with_lanes
 from armeval.kernels.records import Records
 
 
@@ -63,7 +63,7 @@ def test_decay_is_the_exponential() -> None:
 
 def test_lanes_give_what_single_numbers_give() -> None:
     row = (WIDTH,)
-    given = aligned_zeros((100,), np.dtype([(name, float, row) for name in ("x", "sine", "cosine", "decay")]))
+    given = aligned_zeros((100,), np.dtype([(name, float, row) for name in ("x", "sine", "cosine", "decay", MARK)]))
     given["x"] = np.random.default_rng(1).uniform(-20, 20, (100, WIDTH))
     in_lanes(given)
     x = given["x"].ravel()
