@@ -85,3 +85,30 @@ def lap_of(trajectory: Trajectory, tip: np.ndarray, *, lap: int = 1, run: str = 
 def delayed(trajectory: Trajectory, delay: float) -> np.ndarray:
     """Tip of an arm that does exactly what it is told, too late."""
     return np.column_stack([np.interp(trajectory.time - delay, trajectory.time, column) for column in trajectory.tip.T])
+
+
+def circle(turns=1.0):
+    angle = np.linspace(0.0, 2.0 * np.pi * turns, round(180 * turns) + 1)
+    return 0.05 * np.column_stack([np.cos(angle), np.sin(angle), 0.0 * angle])
+
+
+def eight():
+    angle = np.linspace(0.0, 2.0 * np.pi, 241)
+    return 0.05 * np.column_stack([np.sin(angle), np.sin(2.0 * angle), 0.0 * angle])
+
+
+def back_and_forth():
+    turns = np.arange(9) % 2
+    return np.column_stack([0.08 * turns, np.zeros(9), np.zeros(9)])
+
+
+def comb():
+    """Equal teeth: half a stretch or a whole tooth away the log fits almost as well."""
+    x, y = [], []
+    for tooth in range(8):
+        x += [0.01 * tooth, 0.01 * tooth, 0.01 * tooth + 0.005, 0.01 * tooth + 0.005]
+        y += [0.0, 0.03, 0.03, 0.0]
+    return np.column_stack([x, y, np.zeros(len(x))])
+
+
+PATHS = {"circle": circle(), "eight": eight(), "back and forth": back_and_forth(), "comb": comb()}

@@ -8,37 +8,10 @@ from armeval.evaluate.align import align_by_targets, align_on_path, align_to_pla
 from armeval.evaluate.log_track import log_track
 from armeval.model.joint_log import JointLog
 from armeval.model.trial import Run
-from tests.slides import along, slides
+from tests.slides import PATHS, along, circle, eight, slides
 
 ARM = slides()
 RUN = Run("bare", False)
-
-
-def circle(turns=1.0):
-    angle = np.linspace(0.0, 2.0 * np.pi * turns, round(180 * turns) + 1)
-    return 0.05 * np.column_stack([np.cos(angle), np.sin(angle), 0.0 * angle])
-
-
-def eight():
-    angle = np.linspace(0.0, 2.0 * np.pi, 241)
-    return 0.05 * np.column_stack([np.sin(angle), np.sin(2.0 * angle), 0.0 * angle])
-
-
-def back_and_forth():
-    turns = np.arange(9) % 2
-    return np.column_stack([0.08 * turns, np.zeros(9), np.zeros(9)])
-
-
-def comb():
-    """Equal teeth: half a stretch or a whole tooth away the log fits almost as well."""
-    x, y = [], []
-    for tooth in range(8):
-        x += [0.01 * tooth, 0.01 * tooth, 0.01 * tooth + 0.005, 0.01 * tooth + 0.005]
-        y += [0.0, 0.03, 0.03, 0.0]
-    return np.column_stack([x, y, np.zeros(len(x))])
-
-
-PATHS = {"circle": circle(), "eight": eight(), "back and forth": back_and_forth(), "comb": comb()}
 
 
 def recorded(trajectory, *, offset, early, late, noise=2e-4, targets=False, seed=0, rate=1000.0, angle=None):
@@ -167,53 +140,3 @@ def test_motion_to_the_path_and_from_it_is_left_out(shape):
     np.testing.assert_allclose(track.tracking, 1e-3, atol=1e-9)
     assert track.arc[0] == pytest.approx(0.0, abs=1e-3)
     assert track.arc[-1] == pytest.approx(trajectory.length, abs=1e-3)
-
-
-def test_targets_on_another_path_are_refused_with_their_distance():
-    trajectory = along(eight())
-    log = JointLog(trajectory.time, trajectory.joint, target=1.5 * trajectory.joint, source="other.csv")
-    with pytest.raises(InputError, match=r"other\.csv, lap 1.*do not follow the planned path.*mm"):
-        log_track(ARM, trajectory, RUN, log)
-
-
-def test_targets_a_little_off_the_path_are_told():
-    trajectory = along(eight())
-    log = JointLog(trajectory.time, trajectory.joint, target=trajectory.joint + np.array([0.0, 0.0, 1.5e-3]))
-    _, findings = log_track(ARM, trajectory, RUN, log)
-    assert "1.5 mm off the planned path" in str(findings[0])
-
-
-def test_targets_that_stop_half_way_are_refused():
-    trajectory = along(eight())
-    half = len(trajectory.time) // 2
-    log = JointLog(trajectory.time[:half], trajectory.joint[:half], target=trajectory.joint[:half], source="half.csv")
-    with pytest.raises(InputError, match=r"half\.csv.*of a path of.*log the whole lap"):
-        log_track(ARM, trajectory, RUN, log)
-
-
-def test_laps_that_run_on_into_each_other_are_refused():
-    trajectory = along(eight())
-    target = np.concatenate([trajectory.joint, trajectory.joint])
-    log = JointLog(1e-3 * np.arange(len(target)), target, target=target, source="twice.csv")
-    with pytest.raises(InputError, match="`lap` column"):
-        log_track(ARM, trajectory, RUN, log)
-
-
-def test_of_laps_with_a_way_back_one_is_taken_and_the_rest_told():
-    trajectory = along(comb())
-    target = np.concatenate([trajectory.joint, np.linspace(trajectory.joint[-1], trajectory.joint[0], 500)] * 2)
-    log = JointLog(1e-3 * np.arange(len(target)), target, target=target, source="twice.csv")
-    track, findings = log_track(ARM, trajectory, RUN, log)
-    assert "`lap` column" in findings[0].mend
-    assert track.duration == pytest.approx(trajectory.duration, abs=0.05)
-    np.testing.assert_allclose(track.tracking, 0.0, atol=1e-12)
-
-
-def test_logged_targets_set_the_timing_whatever_the_feed():
-    trajectory, slower = along(eight(), feed=0.1), along(eight(), feed=0.037)
-    log = JointLog(slower.time, slower.joint, target=slower.joint)
-    track, findings = log_track(ARM, trajectory, RUN, log)
-    assert not findings
-    assert track.duration == pytest.approx(slower.duration, abs=5e-3)
-    np.testing.assert_allclose(track.arc[::100], slower.arc[: len(track.arc)][::100], atol=1e-4)
-    np.testing.assert_allclose(track.lag, 0.0, atol=1e-7)
