@@ -41,6 +41,7 @@ index_error = "0.1 deg"            # motor angle, one sigma
 # gravity_feedforward = true       # the drives carry the arm's weight; without it: as [servo] says
 # bandwidth = "10 Hz"              # the hand itself moves no faster: the motion is smoothed there
 # run = "bare"                     # its logged joint angles are the motion; without it: the planned path
+# thresholds = "thresholds.toml"   # what a hand notices, for you to edit; without it: the same as shipped
 
 [[run]]
 name = "bare"
@@ -82,7 +83,7 @@ def robot_folder(name: str) -> Path:
 
 
 def new_trial(directory: str | os.PathLike[str], robot: str, *, force: bool = False) -> Path:
-    """Write a trial to start from: a commented ``trial.toml``, a short path, and the robot's own folder.
+    """Write a trial to start from: a commented ``trial.toml``, a short path, thresholds, and the robot's own folder.
 
     Parameters
     ----------
@@ -102,6 +103,7 @@ def new_trial(directory: str | os.PathLike[str], robot: str, *, force: bool = Fa
     InputError
         If there is no such robot; if the folder holds files and ``force`` is not set, or may not be written.
     """
+    from armeval.files.thresholds_file import shipped_thresholds
     from armeval.files.toml_file import read_toml
 
     source = robot_folder(robot)
@@ -109,6 +111,7 @@ def new_trial(directory: str | os.PathLike[str], robot: str, *, force: bool = Fa
     with write_folder(directory, force=force) as folder:
         shutil.copytree(source, folder / robot, ignore=shutil.ignore_patterns(_STARTER_PATH, ".*", "__pycache__"))
         shutil.copyfile(source / _STARTER_PATH, folder / "path.csv")
+        shutil.copyfile(shipped_thresholds(), folder / "thresholds.toml")
         text = _TRIAL.format(title=f"First trial of {robot}", robot=robot, joint=joints[0])
         (folder / "trial.toml").write_text(text, encoding="utf-8")
     return Path(directory) / "trial.toml"

@@ -11,7 +11,8 @@ from armeval.files.arm_file import ArmReading, load_arm
 from armeval.files.logs import find_logs, read_logs
 from armeval.files.reading import Reading, existing_file
 from armeval.files.toml_file import check_schema, read_toml, validate
-from armeval.files.trial_table import TRIAL_SCHEMA, TrialTable
+from armeval.files.trial_table import TRIAL_SCHEMA, HandTable, TrialTable
+from armeval.model.hand import Hand
 from armeval.model.joint_log import JointLog
 from armeval.model.planned_path import PlannedPath
 from armeval.model.trial import Run, Trial
@@ -59,6 +60,7 @@ def _load(path: str | os.PathLike[str], found: Findings, with_logs: bool, progre
     planned = _path(named["path"], reading, found) if "path" in named else None
     files = _logs_of_runs(content, folder, found, with_logs)
     laps = _laps(files, content.get("columns"), reading, found, progress)
+    hand = None if table is None or table.hand is None else _hand(table.hand, folder, found)
     if table is None or reading.arm is None or planned is None or found.has_errors:
         raise InputError.of(found.found)
     if planned.time is not None:
@@ -75,12 +77,13 @@ def _load(path: str | os.PathLike[str], found: Findings, with_logs: bool, progre
         acceleration=table.acceleration,
         compensation=table.compensation.value(),
         sticking=table.sticking.value(),
-        hand=None if table.hand is None else table.hand.value(),
+        hand=hand,
         findings=found.warnings,
         files=(
             os.fspath(path),
             *reading.files,
             os.fspath(named["path"]),
+            *([hand.thresholds.source] if hand is not None and hand.thresholds and hand.thresholds.source else []),
             *dict.fromkeys(os.fspath(file) for run in files for file in run),
         ),
         source=os.fspath(path),
@@ -99,6 +102,16 @@ def _path(file: Path, reading: ArmReading, found: Findings) -> PlannedPath | Non
         return read_path(file, arm.joints, [bool(slides) for slides in arm.chain.prismatic], findings=found)
     except InputError as fault:
         found.take(fault)
+        return None
+
+
+def _hand(table: HandTable, folder: Path, found: Findings) -> Hand | None:
+    from armeval.files.thresholds_file import read_thresholds
+
+    try:
+        return table.value(read_thresholds(None if table.thresholds is None else folder / table.thresholds))
+    except InputError as fault:
+        found.take(fault, place="[hand]")
         return None
 
 

@@ -10,6 +10,7 @@ from pydantic import BeforeValidator, Field, StrictBool
 from armeval.files.quantities import Acceleration, Angle, Speed, Unit
 from armeval.files.toml_file import Table
 from armeval.model.hand import Hand
+from armeval.model.thresholds import Thresholds
 from armeval.model.trial import Compensation, StickingRule
 
 TRIAL_SCHEMA = "armeval/trial/1"
@@ -47,10 +48,11 @@ class HandTable(Table):
     gravity_feedforward: StrictBool | None = Hand.gravity_feedforward
     bandwidth: Annotated[float, Unit("Hz", above=0.0)] = Hand.bandwidth
     run: str | None = Hand.run
+    thresholds: str | None = None
 
-    def value(self) -> Hand:
-        """Give what the model makes of it."""
-        return Hand(**self.model_dump())
+    def value(self, thresholds: Thresholds) -> Hand:
+        """Give what the model makes of it, with the thresholds that it names."""
+        return Hand(**self.model_dump(exclude={"thresholds"}), thresholds=thresholds)
 
 
 def _as_list(given: Any) -> Any:

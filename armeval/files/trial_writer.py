@@ -91,12 +91,12 @@ def trial_text(
         "least_dwell": told(sticking.least_dwell, "s"),
     }
     if trial.hand is not None:
-        content["hand"] = _hand(trial.hand)
+        content["hand"] = _hand(trial.hand, folder)
     content["run"] = [_run(run, folder) for run in trial.runs]
     return tomli_w.dumps(content)
 
 
-def _hand(hand: Hand) -> dict[str, Any]:
+def _hand(hand: Hand, folder: str | os.PathLike[str]) -> dict[str, Any]:
     table: dict[str, Any] = {}
     if hand.rendered_force is not None:
         table["rendered_force"] = told(hand.rendered_force, "N")
@@ -105,6 +105,8 @@ def _hand(hand: Hand) -> dict[str, Any]:
     table["bandwidth"] = told(min(hand.bandwidth, _NO_SMOOTHING), "Hz")
     if hand.run is not None:
         table["run"] = hand.run
+    if hand.thresholds is not None and hand.thresholds.source:
+        table["thresholds"] = relative(hand.thresholds.source, folder)
     return table
 
 

@@ -6,6 +6,7 @@ import math
 from dataclasses import dataclass
 
 from armeval.errors import InputError
+from armeval.model.thresholds import Thresholds
 
 
 @dataclass(frozen=True)
@@ -24,12 +25,15 @@ class Hand:
         most that voluntary motions of the hand hold (common practice, no source).
     run
         Run whose logged joint angles are the motion; None: the planned trajectory.
+    thresholds
+        What a hand notices; None: ripple is not judged by it.
     """
 
     rendered_force: float | None = None
     gravity_feedforward: bool | None = None
     bandwidth: float = 10.0
     run: str | None = None
+    thresholds: Thresholds | None = None
 
     def __post_init__(self) -> None:
         if self.rendered_force is not None and not 0.0 < self.rendered_force < math.inf:
