@@ -2,6 +2,7 @@
 
 from ._version import __version__
 from .errors import Finding, InputError, InputWarning
+from .evaluate.budget import Budget, budget
 from .evaluate.cog_report import CogReport, cog_report
 from .evaluate.compare import Comparison, compare
 from .evaluate.locate import Location, locate
@@ -32,6 +33,7 @@ from .report import write_report
 
 __all__ = [
     "Arm",
+    "Budget",
     "CheckResult",
     "CogMap",
     "CogReport",
@@ -52,6 +54,7 @@ __all__ = [
     "Trajectory",
     "Trial",
     "__version__",
+    "budget",
     "check",
     "cog_report",
     "compare",

@@ -54,7 +54,7 @@ class ActingCause:
 
 @dataclass(frozen=True)
 class Replayed:
-    """Mean squared tracking error and path deviation [m^2] of a replay; whether any torque was cut, settling included."""
+    """Mean squared tracking error and path deviation [m^2]; whether any torque was cut, settling included."""
 
     mean_squares: tuple[float, float]
     was_cut: bool

@@ -20,3 +20,8 @@ def modelled(arm: Arm) -> Arm:
         for drive in arm.drives
     )
     return replace(arm, drives=tuple(drives))
+
+
+def unmapped(arm: Arm) -> list[str]:
+    """Say of which joints nothing is known about their cogging."""
+    return [f"joint {d.joint} has no cog map: no cogging is predicted for it" for d in arm.drives if d.cog_map is None]

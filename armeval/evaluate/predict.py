@@ -13,7 +13,7 @@ from armeval.errors import InputError
 from armeval.evaluate.cause import Counterfactual, Removable
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.modelled_arm import modelled
+from armeval.evaluate.modelled_arm import modelled, unmapped
 from armeval.evaluate.plan import plan_trial
 from armeval.evaluate.quasistatic import Quasistatic, quasistatic
 from armeval.evaluate.replay import replay
@@ -244,11 +244,7 @@ def _with_drive(arm: Arm, joint: int, drive: Drive) -> Arm:
 
 
 def _doubts(trial: Trial, runs: list[PredictedRun]) -> list[str]:
-    doubts = [
-        f"joint {drive.joint} has no cog map: no cogging is predicted for it"
-        for drive in trial.arm.drives
-        if drive.cog_map is None
-    ]
+    doubts = unmapped(trial.arm)
     for run in runs:
         for joint, share in zip(trial.arm.joints, run.saturated, strict=True):
             if share > 0.0:
