@@ -10,7 +10,7 @@ from typing import Annotated
 import typer
 
 from armeval._version import __version__
-from armeval.cli import check, demo, locate, maps, measure, new, predict, report
+from armeval.cli import budget, check, demo, feel, locate, maps, measure, new, predict, report
 from armeval.errors import InputError
 
 app = typer.Typer(
@@ -48,8 +48,10 @@ for name, function, question in (
     ("check", check.check, "are my files sound?"),
     ("map", maps.maps, "what do these cog maps say?"),
     ("predict", predict.predict, "how far will the tip stray, and where will it stick?"),
+    ("budget", budget.budget, "which cause accounts for how much of the tip error?"),
     ("measure", measure.measure, "how far did it stray, according to the logs?"),
     ("locate", locate.locate, "where did (or will) it stick, which joint, why?"),
+    ("feel", feel.feel, "what does a hand meet that leads the arm?"),
     ("report", report.report, "the before/after compensation report"),
 ):
     app.command(name, short_help=question)(function)
