@@ -15,6 +15,8 @@ from armeval.units import angle_text, length_text, significant, time_text
 _LOOKED_AT = 50_000
 _LEAST_OFFSET = np.radians(5.0)
 _LEAST_SLIDE_OFFSET = 0.01
+_LEAST_MOTION = 2e-3
+_LEAST_SLIDE = 2e-4
 _LEAST_SATURATED_SHARE = 1e-3
 
 
@@ -36,9 +38,12 @@ def doubt_log(log: JointLog, arm: Arm, found: Findings, place: str) -> None:
     every = slice(None, None, max(1, len(log.time) // _LOOKED_AT))  # of a long log, some samples tell enough
     angle = log.angle[every].copy(order="F")
     target = None if log.target is None else log.target[every].copy(order="F")
+    chain = arm.chain
     for j, joint in enumerate(arm.joints):
-        slides = bool(arm.chain.prismatic[j])
-        if target is not None:
+        slides = bool(chain.prismatic[j])
+        if target is None:
+            _doubt_range(joint, slides, angle[:, j], float(chain.lower[j]), float(chain.upper[j]), found, place)
+        else:
             _doubt_position(joint, slides, angle[:, j], target[:, j], found, place)
         if log.torque is not None:
             _doubt_torque(joint, arm.drives[j].torque_limit, log.torque[:, j], found, place)
@@ -67,7 +72,7 @@ def _doubt_position(
     reach = float(np.sqrt(np.mean(told**2)))
     noun = "position" if slides else "angle"
     along = float(np.mean(told * moved))
-    if reach > 0.0 and float(np.mean(moved**2)) > 0.0:
+    if reach > (_LEAST_SLIDE if slides else _LEAST_MOTION) and float(np.mean(moved**2)) > 0.0:
         fit = along / (reach * float(np.sqrt(np.mean(moved**2))))
         slope = along / reach**2
         if fit < -0.9:
@@ -91,6 +96,22 @@ def _doubt_position(
         size = length_text(middle) if slides else angle_text(middle)
         found.warning(
             f"joint {joint} is off by a constant {size}: index?", "reference the encoder before the run", place=place
+        )
+
+
+def _doubt_range(
+    joint: str, slides: bool, angle: FloatArray, lower: float, upper: float, found: Findings, place: str
+) -> None:
+    """Compare the angle of one joint with its range: where no target was logged, only that can tell."""
+    margin = _LEAST_SLIDE_OFFSET if slides else _LEAST_OFFSET
+    lowest, highest = float(angle.min()), float(angle.max())
+    if lowest < lower - margin or highest > upper + margin:
+        text = length_text if slides else angle_text
+        found.warning(
+            f"joint {joint} reads {text(lowest)} to {text(highest)}, and its range is {text(lower)} to {text(upper)}: "
+            "index, sign or unit?",
+            "check the column's unit, and reference the encoder before the run",
+            place=place,
         )
 
 

@@ -71,6 +71,8 @@ def read_joint_log(
         if lap is not None:
             carry_on_joints(samples, signals, arm, found, "", one_lap=False)
             laps = parted(samples, lap, table, found)
+        if not laps or len(laps[0].time) < 2:
+            raise InputError("the log has one row", "log a whole lap", place=table.places([0])[0])
         logs = []
         for index, samples in enumerate(laps):
             place = f"lap {first_lap + index}" if len(laps) > 1 else ""
@@ -108,9 +110,6 @@ def open_log(path: str | os.PathLike[str], sliding: Sequence[str]) -> Table:
 
 def _log(samples: Samples, signals: LogColumns, table: Table, arm: Arm, found: Findings, place: str) -> JointLog:
     """Make the log of one lap of its samples."""
-    if len(samples.time) < 2:
-        row = table.places([int(samples.row[0])])[0]
-        raise InputError("the log has one row", "log a whole lap", place=", ".join(filter(None, (place, row))))
     carry_on_clock(samples.time, signals.time, found, place)
     samples = in_order_of_time(samples, table, found)
     carry_on_joints(samples, signals, arm, found, place)

@@ -63,6 +63,8 @@ def read_samples(table: Table, columns: LogColumns) -> tuple[Samples, FloatArray
 def parted(samples: Samples, lap: FloatArray, table: Table, found: Findings) -> list[Samples]:
     """Part the samples by the number of their lap, shape (k,), in the order in which the laps begin.
 
+    A lap of one sample, such as the first of a lap that was not driven any more, is left out with a warning.
+
     Raises
     ------
     InputError
@@ -78,6 +80,10 @@ def parted(samples: Samples, lap: FloatArray, table: Table, found: Findings) -> 
     ends = [*starts[1:].tolist(), len(lap)]
     numbers = lap[starts]
     if len(np.unique(numbers)) == len(numbers):
-        return [samples.at(slice(first, last)) for first, last in zip(starts.tolist(), ends, strict=True)]
-    # Samples of one lap stand among those of another: late ones.
-    return [samples.at(np.flatnonzero(lap == number)) for number in dict.fromkeys(numbers.tolist())]
+        laps = [samples.at(slice(first, last)) for first, last in zip(starts.tolist(), ends, strict=True)]
+    else:  # samples of one lap stand among those of another: late ones
+        laps = [samples.at(np.flatnonzero(lap == number)) for number in dict.fromkeys(numbers.tolist())]
+    for single in (each for each in laps if len(each.time) == 1):
+        row = table.places([int(single.row[0])])[0]
+        found.warning(f"the lap {lap[int(single.row[0])]:g} has one row: left out", "log whole laps", place=row)
+    return [each for each in laps if len(each.time) > 1]

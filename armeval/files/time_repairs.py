@@ -64,7 +64,11 @@ def in_order_of_time(samples: Samples, table: Table, found: Findings) -> Samples
             f"{_samples(int(standing.sum()))} had the time of the one before: the first of each is kept",
             place=_first(standing, samples, table),
         )
-    return samples.at(np.flatnonzero(~same_time))
+    rising_in_time = np.flatnonzero(~same_time)
+    if len(rising_in_time) < 2:
+        refuse_time_that_does_not_rise(samples.time, np.flatnonzero(same_time), samples.row, _RESTARTED, table, found)
+        found.raise_errors()
+    return samples.at(rising_in_time)
 
 
 def _equals_the_one_before(samples: Samples) -> BoolArray:

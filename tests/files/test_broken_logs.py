@@ -155,13 +155,6 @@ REFUSED = [
         "lap is 1.5",
         "whole",
     ),
-    (
-        "lap of one row",
-        every_line(lambda line: f"{line},{int(line == LINES[-1])}").replace("[mm]", "[mm],lap"),
-        "lap 2, row 61",
-        "one row",
-        "whole lap",
-    ),
     ("UTF-16", log_text().encode("utf-16"), "byte 1", "UTF-16", "UTF-8"),
     ("Latin-1", with_cell(9, 2, "12\u00b0").encode("latin-1"), "row 9, byte", "0xb0 is not UTF-8", "UTF-8"),
     ("zeros of a lost disk block", log_text().encode() + b"\0" * 512, "row 62, byte", "no text", "UTF-8"),
