@@ -8,6 +8,7 @@ import numpy as np
 
 from armeval.arrays import BoolArray, FloatArray
 from armeval.errors import InputError
+from armeval.evaluate.members import nominal_member
 from armeval.evaluate.replay_input import replay_input
 from armeval.kernels.replay import replay_lap
 from armeval.model.arm import Arm
@@ -83,16 +84,16 @@ def replay(
     InputError
         If the trajectory does not fit the arm, or the motion grows beyond all bounds.
     """
+    first = np.asarray(trajectory.joint[0] if start is None else start, dtype=np.float64)
     prepared = replay_input(
         arm,
         trajectory,
+        [nominal_member(arm, compensation, first, seed)],
         compensated=compensated,
         compensation=compensation,
         causes=causes,
         substeps=substeps,
         settle=settle,
-        seeds=(np.random.default_rng(seed),),
-        start=start,
     )
     lost = replay_lap(*prepared)
     if lost >= 0:
