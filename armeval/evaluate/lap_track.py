@@ -89,10 +89,12 @@ class LapTrack:
 
     @property
     def tracking(self) -> FloatArray:
-        """Shape (k,) [m]. Norm of the tracking error: tip minus target at the same instant."""
+        """Shape (k,) [m]. Norm of the tracking error, tip minus target at the same instant; worked out anew."""
         from armeval.kernels.distances import distances
 
-        return distances(self.tip, self.target_tip)
+        found = distances(self.tip, self.target_tip)
+        found.setflags(write=False)
+        return found
 
     @property
     def duration(self) -> float:

@@ -57,6 +57,7 @@ def _track(arm: Arm, trajectory: Trajectory, run: Run, log: JointLog, alignment:
         target = np.column_stack([np.interp(planned, trajectory.time, column) for column in trajectory.joint.T])
         arc = np.interp(planned, trajectory.time, trajectory.arc)
         target.setflags(write=False)
+        arc.setflags(write=False)
     known = log.resolution if log.resolution is not None else np.zeros(len(arm.joints))
     return track(
         arm,

@@ -69,7 +69,7 @@ def follow(points: FloatArray, path: FloatArray, path_arc: FloatArray) -> FloatA
     if len(points) == 0:
         return np.empty(0)
     whole = np.array([np.inf])
-    distance, nearest = nearest_near(points[:1], np.zeros(1), whole, path, path_arc)
+    distance, nearest = nearest_near(points[:1], path_arc[:1], whole, path, path_arc)
     from_start = float(np.linalg.norm(points[0] - path[0]))
     start = 0.0 if from_start <= float(distance[0]) + _AT_START else float(nearest[0])
     return progress(points, path, path_arc, start)

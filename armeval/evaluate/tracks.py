@@ -59,13 +59,13 @@ def track(
     angle, target = np.ascontiguousarray(angle), np.ascontiguousarray(target)
     if resolution is None:
         resolution = arm.resolution if source == "log" else np.zeros(len(arm.joints))
-    tip, target_tip = tips(arm, angle), tips(arm, target)
+    # Read-only arrays are taken over by the track as they are, and kernels need no second version for them.
+    tip, target_tip = _sealed(tips(arm, angle)), _sealed(tips(arm, target))
     if arc is None:
         arc = follow(target_tip, trajectory.path, trajectory.path_arc)
-    deviation, lag = progress_along(tip, arc, trajectory)
-    # Read-only arrays are taken over by the track as they are, without a copy.
-    for array in (tip, target_tip, arc, deviation, lag):
-        array.setflags(write=False)
+    else:
+        arc = np.ascontiguousarray(arc).view()
+    deviation, lag = progress_along(tip, _sealed(arc), trajectory)
     return LapTrack(
         run=run,
         compensated=compensated,
@@ -78,8 +78,8 @@ def track(
         target=target,
         tip=tip,
         target_tip=target_tip,
-        deviation=deviation,
-        lag=lag,
+        deviation=_sealed(deviation),
+        lag=_sealed(lag),
         resolution=resolution,
         speed=speed,
         torque=torque,
@@ -110,3 +110,9 @@ def progress_along(tip: FloatArray, arc: FloatArray, trajectory: Trajectory) -> 
 
     spread(hold, chunks(len(arc)))
     return deviation, lag
+
+
+def _sealed(values: FloatArray) -> FloatArray:
+    """Make an array of our own read-only."""
+    values.setflags(write=False)
+    return values
