@@ -32,7 +32,9 @@ def renamed(columns: Sequence[Column], names: Mapping[str, str] | None, found: F
         return tuple(columns)
     given: dict[int, Column] = {}
     for foreign, wanted in names.items():
-        places = [i for i, column in enumerate(columns) if foreign.strip() in (column.text, column.name)]
+        key = foreign.strip()
+        places = [i for i, column in enumerate(columns) if column.text == key]
+        places = places or [i for i, column in enumerate(columns) if column.name == key]
         if not places:
             found.error(
                 f"there is no column `{foreign}`", near(foreign, (column.text for column in columns)), place="[columns]"

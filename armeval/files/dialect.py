@@ -230,13 +230,12 @@ def _columns(text: str, delimiter: str, row: int) -> tuple[Column, ...]:
             "part the columns by comma, semicolon or tab",
             place=place,
         )
-    columns: list[Column] = []
-    faults: list[InputError] = []
-    for cell in cells:
-        try:
-            columns.append(Column(cell, *header(cell)))
-        except InputError as fault:
-            faults.append(fault.placed(place=f"{place}, column `{cell}`"))
-    if faults:
-        raise InputError.of(finding for fault in faults for finding in fault.findings)
-    return tuple(columns)
+    return tuple(column_of(cell) for cell in cells)
+
+
+def column_of(text: str) -> Column:
+    """Part a header's cell into name and unit; one in which brackets mean something else is all name."""
+    try:
+        return Column(text, *header(text))
+    except InputError:
+        return Column(text, text, None)

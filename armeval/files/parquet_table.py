@@ -11,12 +11,11 @@ from typing import TYPE_CHECKING
 from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError
 from armeval.files.arrow import from_arrow
-from armeval.files.dialect import Column
+from armeval.files.dialect import Column, column_of
 from armeval.files.growing import GrowingArray
 from armeval.files.reading import existing_file
 from armeval.files.row_faults import no_numbers
 from armeval.files.scaled import Scaled, scaled_rows
-from armeval.units import header
 
 if TYPE_CHECKING:
     import pyarrow as pa
@@ -91,7 +90,7 @@ def open_parquet(path: str | os.PathLike[str]) -> ParquetTable:
     Raises
     ------
     InputError
-        If it cannot be read, or a column's name cannot.
+        If it cannot be read, or two columns have the same name.
     """
     import pyarrow as pa
     from pyarrow import parquet
@@ -104,7 +103,7 @@ def open_parquet(path: str | os.PathLike[str]) -> ParquetTable:
     if len(set(names)) < len(names):
         twice = next(name for name in names if names.count(name) > 1)
         raise InputError(f"two columns are called `{twice}`", "keep one of them", file=path)
-    return ParquetTable(file, os.fspath(path), tuple(Column(name, *header(name)) for name in names))
+    return ParquetTable(file, os.fspath(path), tuple(map(column_of, names)))
 
 
 def _damaged(fault: Exception) -> InputError:

@@ -144,9 +144,9 @@ REFUSED = [
     (
         "broken bracket",
         with_header(HEADER.replace("deg]", "deg")),
-        "row 1, column `lift.angle [deg`",
-        "cannot be read",
-        "[unit]",
+        "header",
+        "no column `lift.angle`",
+        "did you mean `lift.angle [deg`?",
     ),
     (
         "lap of a half",

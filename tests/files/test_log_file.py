@@ -71,6 +71,23 @@ def test_foreign_headers_are_renamed(tmp_path: Path, gantry: Arm) -> None:
     assert told == []
 
 
+@pytest.mark.parametrize(
+    "names",
+    [
+        ("t", "pos[0]", "pos[1]", "pos[2]"),
+        ("t [s]", "arm.q[0] [rad]", "arm.q[1].raw", "arm.q[2"),
+        ("t", "q", "q [deg]", "q {z}"),
+        ("Zeit", "Größe 1", "Größe 2", "長さ"),
+    ],
+)
+def test_foreign_headers_may_be_written_in_any_way(tmp_path: Path, gantry: Arm, names: tuple[str, ...]) -> None:
+    lines = log_lines(30)
+    lines[0] = ",".join(names)
+    meaning = ("time [s]", "turn.angle [rad]", "lift.angle [deg]", "reach.angle [mm]")
+    (log,), _ = read(tmp_path / "l.csv", gantry, "\n".join(lines), columns=dict(zip(names, meaning, strict=True)))
+    np.testing.assert_allclose(log.angle, motion(30)[1], rtol=1e-14)
+
+
 def test_a_foreign_name_that_is_not_there_names_the_near_one(tmp_path: Path, gantry: Arm) -> None:
     fault = faults(lambda: read(tmp_path / "l.csv", gantry, log_text(), columns={"turn.angel": "turn.angle [rad]"}))[0]
     assert fault.what == "there is no column `turn.angel`"

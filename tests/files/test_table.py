@@ -161,7 +161,6 @@ def test_decimal_marks_that_contradict_each_other_are_no_numbers(
         (b"0,1\n1,2\n", "numbers, not a header", "row 1"),
         (b"0,5;1,5\n1;2\n", "numbers, not a header", "row 1"),
         (b"time q\n0 1\n1 2\n", "one column only", "row 1"),
-        (b"time [s,q [deg]\n0,1\n", "cannot be read", "row 1, column `time [s`"),
         (b'"time [s],q [deg]\n0,1\n', "cannot be read", "row 1"),
         ("time [s],q [deg]\n0,1\n".encode("utf-16"), "UTF-16", "byte 1"),
         (b"time [s],q [deg]\n0,1\n\0\0\0\0", "no text", "row 3, byte 22"),
