@@ -61,10 +61,8 @@ def track(
         resolution = arm.resolution if source == "log" else np.zeros(len(arm.joints))
     # Read-only arrays are taken over by the track as they are, and kernels need no second version for them.
     tip, target_tip = _sealed(tips(arm, angle)), _sealed(tips(arm, target))
-    if arc is None:
-        arc = follow(target_tip, trajectory.path, trajectory.path_arc)
-    else:
-        arc = np.ascontiguousarray(arc).view()
+    path = trajectory.path, trajectory.path_arc
+    arc = follow(target_tip, *path) if arc is None else np.ascontiguousarray(arc).view()
     deviation, lag = progress_along(tip, _sealed(arc), trajectory)
     return LapTrack(
         run=run,
