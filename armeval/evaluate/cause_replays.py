@@ -3,21 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import Literal, get_args
 
 import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.errors import InputError
+from armeval.evaluate.members import Member, nominal_member
 from armeval.evaluate.owen_value import Coalition
 from armeval.evaluate.path_progress import path_progress
-from armeval.evaluate.replay_input import ReplayInput, replay_input
+from armeval.evaluate.replay_input import ReplayInput, replay_input, with_members
 from armeval.evaluate.threads import spread
 from armeval.kernels.chain import tip_positions
 from armeval.kernels.distances import distances
-from armeval.kernels.lanes import WIDTH, aligned_zeros
-from armeval.kernels.records import lap_records, sent_records
+from armeval.kernels.lanes import WIDTH
+from armeval.kernels.records import lap_records
 from armeval.kernels.replay import replay_lap
 from armeval.model.arm import Arm
 from armeval.model.causes import Causes
@@ -27,7 +29,6 @@ from armeval.progress import Progress, silent
 
 Cause = Literal["cogging", "friction", "servo lag", "encoder", "torque resolution", "saturation"]
 CAUSES: tuple[Cause, ...] = get_args(Cause)
-_PER_JOINT: tuple[Cause, ...] = CAUSES[:2]
 _SETTLE = 0.5
 
 
@@ -157,48 +158,53 @@ class CauseReplays:
             alike.setdefault(self._causes(coalition), []).append(coalition)
         inputs = spread(self._input, list(alike), threads=threads)
         blocks = [
-            (prepared, own[start : start + WIDTH])
-            for prepared, own in zip(inputs, alike.values(), strict=True)
+            (prepared, causes, own[start : start + WIDTH])
+            for prepared, (causes, own) in zip(inputs, alike.items(), strict=True)
             for start in range(0, len(own), WIDTH)
         ]
         done = spread(lambda block: self._block(*block), blocks, what=what, progress=progress, threads=threads)
-        for (_, own), replayed in zip(blocks, done, strict=True):
+        for (_, _, own), replayed in zip(blocks, done, strict=True):
             found.update(zip(own, replayed, strict=True))
 
     def _causes(self, coalition: Coalition) -> Causes:
-        whole = {f.name for f in fields(Causes)}
-        acts = {g.cause.replace(" ", "_"): bool(part) for g, part in zip(self.acting, coalition, strict=True)}
-        return Causes(**{name: here for name, here in acts.items() if name in whole and name not in _PER_JOINT})
+        """Give the switches of what acts on the whole arm; what has nothing to act on makes no difference."""
+        present = {group.cause: bool(part) for group, part in zip(self.acting, coalition, strict=True)}
+        return Causes(
+            servo_lag=present["servo lag"],
+            encoder=present.get("encoder", True),
+            torque_resolution=present.get("torque resolution", True),
+            saturation=present.get("saturation", True),
+        )
 
     def _input(self, causes: Causes) -> ReplayInput:
         """Prepare replays with the whole arm's causes as given, and all joints' cogging and friction."""
         return replay_input(
             self.arm,
             self.trajectory,
+            [self._as_filed],
             compensated=self.compensated,
             compensation=self.compensation,
             causes=causes,
             substeps=self.substeps,
             settle=_SETTLE,
-            seeds=tuple(np.random.default_rng(self.seed) for _ in range(WIDTH)),
         )
 
-    def _block(self, prepared: ReplayInput, coalitions: Sequence[Coalition]) -> list[Replayed]:
-        n, plan = self.arm.chain.count, self.trajectory
+    @cached_property
+    def _as_filed(self) -> Member:
+        return nominal_member(self.arm, self.compensation, self.trajectory.joint[0], self.seed)
+
+    def _block(self, prepared: ReplayInput, causes: Causes, coalitions: Sequence[Coalition]) -> list[Replayed]:
+        n, plan, member = self.arm.chain.count, self.trajectory, self._as_filed
         cogging, friction = self._joint_shares(coalitions, "cogging"), self._joint_shares(coalitions, "friction")
-        joints = aligned_zeros(prepared.joints.shape, prepared.joints.dtype)
-        joints[...] = prepared.joints
-        joints["cog_gain"] *= cogging
-        joints["coulomb_friction"] *= friction
-        joints["static_friction"] *= friction
-        own = prepared._replace(
-            joints=joints,
-            tables=prepared.tables * cogging[:, :, None],
-            sent=sent_records(len(prepared.sent), n, WIDTH),
-            lap=lap_records(len(prepared.targets), n, WIDTH),
-        )
+        members = [
+            replace(member, dry_friction=rubs, tables=member.tables * cogs[:, None])
+            for cogs, rubs in zip(cogging.T, friction.T, strict=True)
+        ]
+        own = with_members(prepared, self.arm, members, causes)
+        own = own._replace(lap=lap_records(len(own.targets), n, WIDTH))
+        own.joints["cog_gain"] *= cogging
         if replay_lap(*own) >= 0:
-            lost = np.flatnonzero(~np.isfinite(joints["angle"][:, : len(coalitions)]).all(axis=0))
+            lost = np.flatnonzero(~np.isfinite(own.joints["angle"][:, : len(coalitions)]).all(axis=0))
             self._refuse(coalitions[int(lost[0]) if lost.size else 0])
         lap = own.lap
         replayed = []

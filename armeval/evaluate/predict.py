@@ -7,8 +7,6 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
-import numpy as np
-
 from armeval.errors import InputError
 from armeval.evaluate.cause import Counterfactual, Removable
 from armeval.evaluate.document import JsonValue, as_text, document
@@ -220,12 +218,10 @@ def _counterfactual(trial: Trial, plan: Trajectory, run: Run, substeps: int, see
     def lap_without(joint: str, without: Removable) -> LapTrack:
         arm, causes = trial.arm, Causes()
         i = arm.chain.index(joint)
-        cog_map = arm.drives[i].cog_map
         others = tuple(0.0 if name == joint else 1.0 for name in arm.joints)
         if without == "cogging":
             # The map goes, not the torque alone: the firmware's table would else push where nothing pulls.
-            smooth = cog_map and replace(cog_map, torque=np.zeros_like(cog_map.torque), noise=0.0)
-            arm = _with_drive(arm, i, replace(arm.drives[i], cog_map=smooth))
+            arm = _with_drive(arm, i, replace(arm.drives[i], cog_map=None))
         elif without == "friction":
             causes = Causes(friction=others)
         elif without == "torque limit":
