@@ -9,7 +9,7 @@ import numpy as np
 from armeval.arrays import BoolArray, FloatArray
 from armeval.errors import InputError
 from armeval.evaluate.members import nominal_member
-from armeval.evaluate.replay_input import replay_input
+from armeval.evaluate.replay_input import ReplayInput, replay_input
 from armeval.kernels.replay import replay_lap
 from armeval.model.arm import Arm
 from armeval.model.causes import Causes
@@ -97,11 +97,7 @@ def replay(
     )
     lost = replay_lap(*prepared)
     if lost >= 0:
-        when = (lost - len(prepared.targets) + len(prepared.lap)) * arm.servo.period
-        raise InputError(
-            f"the motion grows beyond all bounds at {when:.3f} s of the lap: the servo loop is not stable",
-            "lower stiffness or damping, shorten the delay, or raise the speed filter's corner",
-        )
+        raise lost_servo(prepared, lost)
     lap = prepared.lap
     return Replay(
         time=np.array(trajectory.time),
@@ -110,4 +106,14 @@ def replay(
         torque=lap["torque"].copy(),
         saturated=lap["cut"] != 0.0,
         resting=lap["rests"] != 0.0,
+    )
+
+
+def lost_servo(prepared: ReplayInput, lost: int) -> InputError:
+    """Say that the motion left the numbers in period ``lost``, settling included."""
+    when = (lost - len(prepared.targets) + len(prepared.lap)) * float(prepared.servo["period"][0])
+    place = f"at {when:.3f} s of the lap" if when >= 0.0 else "before the lap, while the arm holds its first target"
+    return InputError(
+        f"the motion grows beyond all bounds {place}: the servo loop is not stable",
+        "lower stiffness or damping, shorten the delay, or raise the speed filter's corner",
     )

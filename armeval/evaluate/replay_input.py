@@ -112,7 +112,8 @@ def _joints(arm: Arm, members: Sequence[Member], causes: Causes) -> Records:
 
     def each(name: str, factor: FloatArray | float = 1.0) -> FloatArray:
         """Shape (n, lanes), or (n,) with one lane."""
-        values = np.stack([getattr(member, name) for member in members], axis=1) * np.reshape(factor, (-1, 1))
+        values: FloatArray = np.stack([getattr(member, name) for member in members], axis=1)
+        values = values * np.reshape(factor, (-1, 1))
         return values[:, 0] if lanes == 1 else values
 
     joints["gear_ratio"] = of("gear_ratio")
@@ -149,7 +150,7 @@ def _servo(arm: Arm, causes: Causes, compensated: bool, compensation: Compensati
 
 
 def _cogging(arm: Arm) -> FloatArray:
-    """Shape (n, 2, cells + 2): torque, and slope times a cell's width, at even motor angles; the first two come again."""
+    """Shape (n, 2, cells + 2): torque, and slope times a cell's width, at even motor angles; the first two again."""
     maps = [drive.cog_map for drive in arm.drives]
     cells = max([COG_CELLS] + [len(known.torque) for known in maps if known is not None])
     width = 2.0 * np.pi / cells

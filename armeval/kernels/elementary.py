@@ -19,7 +19,7 @@ _TWO_OVER_PI = 2.0 / math.pi
 
 @jit_inline
 def sine_cosine(angle: float) -> tuple[float, float]:
-    """Give the sine and the cosine of an angle [rad] of less than a million turns, right to two units in the last place.
+    """Give sine and cosine of an angle [rad] of less than a million turns, right to two units in the last place.
 
     The angle is brought within a quarter of pi, where the polynomials of Sun Microsystems' freely distributable
     mathematical library (fdlibm, 1993, k_sin.c and k_cos.c) hold.
@@ -64,7 +64,7 @@ def decay(x: float) -> float:
     From the series of exp(-x / 128), squared seven times; beyond x = 40 it stays at exp(-40).
     """
     y = where(x > 40.0, 40.0, x) * (-1.0 / 128.0)
-    term = 1.0 + y * (1.0 / 12.0)
+    term: float = 1.0 + y * (1.0 / 12.0)
     for k in range(11, 0, -1):
         term = 1.0 + y * term * (1.0 / k)
     for _ in range(7):

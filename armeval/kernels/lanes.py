@@ -8,6 +8,9 @@ plain code would branch on such a number, it says :func:`where`; where it would 
 This module teaches the compiler the type: what an operation on it means in LLVM's vector instructions.
 """
 
+# mypy: disable-error-code="untyped-decorator, no-any-return, arg-type, misc"
+# ruff: noqa: ARG001, ARG002  (numba calls these functions with all it knows)
+
 from __future__ import annotations
 
 import operator
@@ -29,7 +32,7 @@ _DOUBLES = ir.VectorType(ir.DoubleType(), WIDTH)
 _BITS = ir.VectorType(ir.IntType(1), WIDTH)
 
 
-class Lanes(types.Type):  # type: ignore[misc]
+class Lanes(types.Type):
     """Eight float64, side by side."""
 
     bitwidth = 64 * WIDTH
@@ -42,7 +45,7 @@ class Lanes(types.Type):  # type: ignore[misc]
         return Conversion.safe if isinstance(other, types.Number) else None
 
 
-class LaneMask(types.Type):  # type: ignore[misc]
+class LaneMask(types.Type):
     """Eight truth values, side by side."""
 
     def __init__(self) -> None:
@@ -53,13 +56,13 @@ lanes, lane_mask = Lanes(), LaneMask()
 
 
 @register_model(Lanes)
-class _LanesModel(models.PrimitiveModel):  # type: ignore[misc]
+class _LanesModel(models.PrimitiveModel):
     def __init__(self, manager: Any, fe_type: Any) -> None:
         super().__init__(manager, fe_type, _DOUBLES)
 
 
 @register_model(LaneMask)
-class _LaneMaskModel(models.PrimitiveModel):  # type: ignore[misc]
+class _LaneMaskModel(models.PrimitiveModel):
     def __init__(self, manager: Any, fe_type: Any) -> None:
         super().__init__(manager, fe_type, _BITS)
 
@@ -72,7 +75,7 @@ def _splat(builder: Any, value: Any) -> Any:
 
 
 @lower_cast(types.Number, Lanes)
-def _number_to_lanes(context: Any, builder: Any, fromty: Any, toty: Any, value: Any) -> Any:  # noqa: ARG001
+def _number_to_lanes(context: Any, builder: Any, fromty: Any, toty: Any, value: Any) -> Any:
     return _splat(builder, context.cast(builder, value, fromty, types.float64))
 
 
@@ -86,7 +89,7 @@ def _operator(function: Any, taken: types.Type, given: types.Type, emit: Any) ->
     """Teach the compiler a binary operator that takes ``taken`` twice and gives ``given``."""
 
     @type_callable(function)
-    def typing(context: Any) -> Any:  # noqa: ARG001
+    def typing(context: Any) -> Any:
         def typed(a: Any, b: Any) -> Any:
             fits = _some_lanes(a, b) if taken is lanes else isinstance(a, LaneMask) and isinstance(b, LaneMask)
             return signature(given, taken, taken) if fits else None
@@ -94,7 +97,7 @@ def _operator(function: Any, taken: types.Type, given: types.Type, emit: Any) ->
         return typed
 
     @lower_builtin(function, type(taken), type(taken))
-    def lower(context: Any, builder: Any, sig: Any, args: Any) -> Any:  # noqa: ARG001
+    def lower(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         return emit(builder, *args)
 
 
@@ -102,11 +105,11 @@ def _unary(function: Any, taken: types.Type, emit: Any) -> None:
     """Teach the compiler a function of one argument that gives what it takes."""
 
     @type_callable(function)
-    def typing(context: Any) -> Any:  # noqa: ARG001
+    def typing(context: Any) -> Any:
         return lambda a: signature(taken, taken) if isinstance(a, type(taken)) else None
 
     @lower_builtin(function, type(taken))
-    def lower(context: Any, builder: Any, sig: Any, args: Any) -> Any:  # noqa: ARG001
+    def lower(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         return emit(builder, *args)
 
 
@@ -150,34 +153,34 @@ _unary(np.floor, lanes, _intrinsic("floor"))
 _unary(np.rint, lanes, _intrinsic("rint"))
 
 
-@intrinsic  # type: ignore[misc]
-def _select(typingctx: Any, condition: Any, a: Any, b: Any) -> Any:  # noqa: ARG001
-    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:  # noqa: ARG001
+@intrinsic
+def _select(typingctx: Any, condition: Any, a: Any, b: Any) -> Any:
+    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         return builder.select(*args)
 
     return lanes(lane_mask, lanes, lanes), emit
 
 
-@intrinsic  # type: ignore[misc]
-def _any(typingctx: Any, condition: Any) -> Any:  # noqa: ARG001
-    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:  # noqa: ARG001
+@intrinsic
+def _any(typingctx: Any, condition: Any) -> Any:
+    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         bits = builder.bitcast(args[0], ir.IntType(WIDTH))
         return builder.icmp_unsigned("!=", bits, ir.Constant(ir.IntType(WIDTH), 0))
 
     return types.boolean(lane_mask), emit
 
 
-@intrinsic  # type: ignore[misc]
-def _get(typingctx: Any, value: Any, lane: Any) -> Any:  # noqa: ARG001
-    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:  # noqa: ARG001
+@intrinsic
+def _get(typingctx: Any, value: Any, lane: Any) -> Any:
+    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         return builder.extract_element(args[0], builder.trunc(args[1], ir.IntType(32)))
 
     return types.float64(lanes, types.intp), emit
 
 
-@intrinsic  # type: ignore[misc]
-def _with(typingctx: Any, value: Any, lane: Any, entry: Any) -> Any:  # noqa: ARG001
-    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:  # noqa: ARG001
+@intrinsic
+def _with(typingctx: Any, value: Any, lane: Any, entry: Any) -> Any:
+    def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:
         return builder.insert_element(args[0], args[2], builder.trunc(args[1], ir.IntType(32)))
 
     return lanes(lanes, types.intp, types.float64), emit
@@ -255,7 +258,7 @@ def _take_own(tables: Any, row: int, entry: Any) -> Any:
 
 
 def with_lanes(records: Any) -> Any:
-    """Give the same records; in those with a field :data:`MARK`, every field whose last axis is of eight is of lanes."""
+    """Give the same records; where they have a field :data:`MARK`, fields whose last axis is of eight are of lanes."""
     return records
 
 
@@ -270,7 +273,7 @@ def _with_lanes(records: Any) -> Any:
     return retyped if MARK in records.dtype.fields else same
 
 
-class LaneRecord(types.Record):  # type: ignore[misc]
+class LaneRecord(types.Record):
     """A record with fields of lanes; it lives inside kernels only."""
 
     @property
@@ -293,8 +296,8 @@ def _laned(record: types.Record) -> LaneRecord:
     return LaneRecord(fields, record.size, record.aligned)
 
 
-@intrinsic  # type: ignore[misc]
-def _retype(typingctx: Any, records: Any) -> Any:  # noqa: ARG001
+@intrinsic
+def _retype(typingctx: Any, records: Any) -> Any:
     result = records.copy(dtype=_laned(records.dtype))
 
     def emit(context: Any, builder: Any, sig: Any, args: Any) -> Any:

@@ -111,7 +111,8 @@ def _zeros(shape: tuple[int, ...], plain: Fields, laned: Fields = (), lanes: int
         # the field that tells, of a size that lets the next record start right too
         fields.append((MARK, np.float64, (WIDTH - sum(math.prod(size) for _, size in plain) % WIDTH,)))
     kind = np.dtype(fields, align=True)
-    return aligned_zeros(shape, kind)
+    records: Records = aligned_zeros(shape, kind)
+    return records
 
 
 def joint_records(chain: ChainArrays, lanes: int = 1) -> Records:
@@ -151,9 +152,15 @@ def sent_records(periods: int, n: int, lanes: int = 1) -> Records:
 
 
 def lap_records(periods: int, n: int, lanes: int = 1) -> Records:
-    """Make the records of a lap, shape (periods,), each field (n,).
+    """Make the records of a lap, shape (periods,).
 
     ``angle``, ``speed``: at the start of the period; ``torque``: commanded there; ``cut``: 1 where that was cut at the
-    torque limit; ``rests``: 1 where the joint was at rest over the step before.
+    torque limit; ``rests``: 1 where the joint was at rest over the step before, (n,) each. ``tip``, (3,): the tip.
     """
-    return _zeros((periods,), (), tuple((name, (n,)) for name in ("angle", "speed", "torque", "cut", "rests")), lanes)
+    fields: Fields = tuple((name, (n,)) for name in ("angle", "speed", "torque", "cut", "rests"))
+    return _zeros((periods,), (), (*fields, ("tip", (3,))), lanes)
+
+
+def bin_records(bins: int, n: int, lanes: int = 1) -> Records:
+    """Make the records of stretches of path, shape (bins,), for :func:`armeval.kernels.survey.survey_laps`."""
+    return _zeros((bins,), (), (("square", ()), ("sticks", (n,))), lanes)

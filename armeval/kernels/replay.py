@@ -31,7 +31,8 @@ def cog_torque(joint: Records, cogging: FloatArray, i: int) -> float:
     s, t = take(cogging, i, 1, below), take(cogging, i, 1, below + 1.0)
     rise = b - a
     torque = a + f * (s + f * ((3.0 * rise - 2.0 * s - t) + f * (s + t - 2.0 * rise)))
-    return gear * joint["cog_gain"] * torque
+    at_joint: float = gear * joint["cog_gain"] * torque
+    return at_joint
 
 
 @jit_inline
