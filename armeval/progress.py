@@ -20,5 +20,5 @@ class Progress(Protocol):
         ...
 
 
-def silent(what: str, done: int, total: int) -> None:  # noqa: ARG001
+def silent(what: str, done: int, total: int) -> None:
     """Listen to nothing."""

@@ -1,6 +1,6 @@
 """Geometry of a serial chain, sample by sample: where its joints and its tip stand.
 
-All quantities are in base coordinates. Every joint's frame has its axis along z (see :class:`armeval.model.chain.Chain`),
+All quantities are in base coordinates. Every joint's frame has its axis along z (:class:`armeval.model.chain.Chain`),
 so turning by q mixes the first two columns of the rotation and sliding by q moves along the third.
 """
 

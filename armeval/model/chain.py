@@ -74,7 +74,11 @@ class Chain:
         for name, value in checked.items():
             object.__setattr__(self, name, value)
         for index in np.flatnonzero(self.lower >= self.upper):
-            raise InputError("the joint's range is empty", "let its lower limit be below its upper", place=f"joint {self.joints[index]}")
+            raise InputError(
+                "the joint's range is empty",
+                "let its lower limit be below its upper",
+                place=f"joint {self.joints[index]}",
+            )
 
     @property
     def count(self) -> int:

@@ -43,5 +43,10 @@ class PlannedPath:
             time = frozen(self.time, (len(points),), "path time")
             if (np.diff(time) <= 0.0).any():
                 row = int(np.argmax(np.diff(time) <= 0.0)) + 1
-                raise InputError("time does not rise", "let every row be later than the one before", file=self.source, place=f"point {row + 1}")
+                raise InputError(
+                    "time does not rise",
+                    "let every row be later than the one before",
+                    file=self.source,
+                    place=f"point {row + 1}",
+                )
             object.__setattr__(self, "time", time)

@@ -63,7 +63,9 @@ class StickingRule:
 
     def __post_init__(self) -> None:
         if not (self.least_target_speed > 0.0 and 0.0 < self.speed_share < 1.0 and self.least_dwell > 0.0):
-            raise InputError("a sticking threshold is out of range", "give values above 0, and a share below 1", place="[sticking]")
+            raise InputError(
+                "a sticking threshold is out of range", "give values above 0, and a share below 1", place="[sticking]"
+            )
 
 
 @dataclass(frozen=True, eq=False)
