@@ -16,6 +16,7 @@ from armeval.units import header
 NUMBER = re.compile(r"\s*[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?\s*", re.ASCII)
 _COMMA_NUMBER = re.compile(r"\s*[+-]?(?:[0-9]+,[0-9]*|,[0-9]+)(?:[eE][+-]?[0-9]+)?\s*", re.ASCII)
 _LINE = re.compile(rb"[^\r\n]*(?:\r\n|\r|\n|$)")
+_BLANK = " \t\r\n\v\f"
 _DELIMITERS = (";", "\t", ",")
 _SAMPLED_LINES = 2000
 
@@ -75,7 +76,8 @@ def cells_of(line: str, delimiter: str) -> list[str]:
 
 def is_comment(line: str) -> bool:
     """Whether a line says nothing about the data: blank, or begun with ``#``."""
-    return not line.strip() or line.lstrip().startswith("#")
+    text = line.lstrip(_BLANK)
+    return not text or text.startswith("#")
 
 
 def read_dialect(sample: bytes, *, complete: bool) -> Dialect:

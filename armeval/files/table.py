@@ -98,7 +98,7 @@ class TextTable:
                         rows[seen] = number
                         if len(rows) == len(wanted):
                             break
-        return [f"row {rows[sample]}" for sample in samples]
+        return [f"row {rows[sample]}" if sample in rows else f"sample {sample + 1}" for sample in samples]
 
     def _sound(self, groups: Sequence[Sequence[Scaled]], dialect: Dialect) -> list[FloatArray] | None:
         """Give the groups as pyarrow reads them; None if anything in them needs a closer look."""
