@@ -24,8 +24,6 @@ def spread(
     """Call a function on every part, several at a time, and give the results in the order of the parts.
 
     ``threads`` is how many at a time; None: one a core.
-
-    ``threads`` is how many at a time; None: one a core.
     The first exception raised by a part is raised here, after the parts under way have ended.
     """
     workers = min(len(parts), (os.cpu_count() or 1) if threads is None else threads)

@@ -36,6 +36,12 @@ index_error = "0.1 deg"            # motor angle, one sigma
 # speed_share = 0.02
 # least_dwell = "20 ms"
 
+# [uncertainty]                    # how far the arm may be from these files, one sigma: `armeval predict --members 200`
+# rotor_index = "0.1 deg"          # motor angle; without it: the index_error above. The map's noise stands there too
+# friction = 0.2                   # of the logarithm of a factor: 0.2 is about 20 %
+# torque_constant = 0.03           # share of itself
+# start = "5 mrad"                 # where the arm rests before the lap, off its first target
+
 # [hand]                           # a hand moves the arm: see `armeval feel`
 # rendered_force = "3 N"           # what the arm is meant to let the hand feel
 # gravity_feedforward = true       # the drives carry the arm's weight; without it: as [servo] says

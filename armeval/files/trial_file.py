@@ -77,6 +77,7 @@ def _load(path: str | os.PathLike[str], found: Findings, with_logs: bool, progre
         acceleration=table.acceleration,
         compensation=table.compensation.value(),
         sticking=table.sticking.value(),
+        uncertainty=table.uncertainty.value(),
         hand=hand,
         findings=found.warnings,
         files=(

@@ -10,6 +10,7 @@ from pydantic import BeforeValidator, Field, StrictBool
 from armeval.files.quantities import Acceleration, Angle, Speed, Unit
 from armeval.files.toml_file import Table
 from armeval.model.hand import Hand
+from armeval.model.spreads import Spreads
 from armeval.model.thresholds import Thresholds
 from armeval.model.trial import Compensation, StickingRule
 
@@ -39,6 +40,19 @@ class StickingTable(Table):
     def value(self) -> StickingRule:
         """Give what the model makes of it."""
         return StickingRule(**self.model_dump())
+
+
+class UncertaintyTable(Table):
+    """``[uncertainty]``: how far the arm may be from what the files say, one sigma each."""
+
+    rotor_index: Annotated[float, Unit("rad", least=0.0)] | None = Spreads.rotor_index
+    friction: Annotated[float, Unit("", least=0.0)] = Spreads.friction
+    torque_constant: Annotated[float, Unit("", least=0.0)] = Spreads.torque_constant
+    start: Annotated[float, Unit("rad", least=0.0)] = Spreads.start
+
+    def value(self) -> Spreads:
+        """Give what the model makes of it."""
+        return Spreads(**self.model_dump())
 
 
 class HandTable(Table):
@@ -80,5 +94,6 @@ class TrialTable(Table):
     columns: dict[str, str] = Field(default={})
     compensation: CompensationTable = CompensationTable()
     sticking: StickingTable = StickingTable()
+    uncertainty: UncertaintyTable = UncertaintyTable()
     hand: HandTable | None = None
     run: Annotated[list[RunTable], Len(1)]

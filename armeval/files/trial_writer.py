@@ -77,7 +77,7 @@ def trial_text(
     content["corner_angle"] = told(trial.corner_angle, "rad")
     if columns:
         content["columns"] = dict(columns)
-    compensation, sticking = trial.compensation, trial.sticking
+    compensation, sticking, uncertainty = trial.compensation, trial.sticking, trial.uncertainty
     content["compensation"] = {
         "table_bins": compensation.table_bins,
         "interpolation": compensation.interpolation,
@@ -90,6 +90,13 @@ def trial_text(
         "speed_share": sticking.speed_share,
         "least_dwell": told(sticking.least_dwell, "s"),
     }
+    content["uncertainty"] = {
+        "friction": uncertainty.friction,
+        "torque_constant": uncertainty.torque_constant,
+        "start": told(uncertainty.start, "rad"),
+    }
+    if uncertainty.rotor_index is not None:
+        content["uncertainty"]["rotor_index"] = told(uncertainty.rotor_index, "rad")
     if trial.hand is not None:
         content["hand"] = _hand(trial.hand, folder)
     content["run"] = [_run(run, folder) for run in trial.runs]

@@ -11,6 +11,7 @@ from armeval.model.arm import Arm
 from armeval.model.hand import Hand
 from armeval.model.joint_log import JointLog
 from armeval.model.planned_path import PlannedPath
+from armeval.model.spreads import Spreads
 
 
 @dataclass(frozen=True)
@@ -95,6 +96,8 @@ class Trial:
         Where the path's direction turns by more than this [rad], it stops.
     compensation, sticking
         What the firmware's table can do; when a joint counts as resting.
+    uncertainty
+        How far the arm may be from what the files say.
     hand
         The hand that moves the arm; None where the trial says nothing about it.
     findings
@@ -112,6 +115,7 @@ class Trial:
     corner_angle: float = math.radians(5.0)
     compensation: Compensation = field(default_factory=Compensation)
     sticking: StickingRule = field(default_factory=StickingRule)
+    uncertainty: Spreads = field(default_factory=Spreads)
     hand: Hand | None = None
     findings: tuple[Finding, ...] = ()
     files: tuple[str, ...] = ()
