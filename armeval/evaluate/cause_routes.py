@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -74,7 +75,7 @@ def torque_route(drive: Drive, event: StickingEvent, held_share: float) -> Route
 def map_ratio(drive: Drive, event: StickingEvent, stiffness: float, compensation: Compensation | None) -> float:
     """Sticking ratio about a rest: steepest slope of the cogging within half a pitch, over the stiffness.
 
-    Compensated, the slope is that of what the table leaves, order by order.
+    Compensated, the slope is that of what the table may leave, order by order, with twice the index error's sigma.
     """
     if drive.cog_map is None:
         return 0.0
@@ -83,7 +84,8 @@ def map_ratio(drive: Drive, event: StickingEvent, stiffness: float, compensation
         return 0.0
     square = drive.gear_ratio**2
     if compensation is not None:
-        left = {part.order: part.share for part in residual(drive.cog_map, compensation).orders}
+        doubtful = replace(compensation, index_error=2.0 * compensation.index_error)
+        left = {part.order: part.share for part in residual(drive.cog_map, doubtful).orders}
         steepest = max(order.order * order.amplitude * left[order.order] for order in found)
         return square * steepest / stiffness
     half = np.pi / found[0].order
@@ -107,7 +109,7 @@ def map_route(drive: Drive, event: StickingEvent, ratio: float, friction_holds: 
     """
     if drive.cog_map is None:
         return Route("map", "not shown", f"no cog map of {event.joint}: measure one")
-    what = "what the table leaves of the cogging" if compensated else "cogging"
+    what = "what the table may leave of the cogging" if compensated else "cogging"
     told = f"within half a pitch {what} rises {ratio:.2g} times as steeply as the servo's torque falls"
     if ratio > 1.0:
         return Route("map", "cogging", told)

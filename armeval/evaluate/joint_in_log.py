@@ -74,7 +74,7 @@ def joints_in_log(arm: Arm, track: LapTrack) -> tuple[JointInLog, ...]:
     told = target_speed(track)[::stride]
     period = float(np.median(np.diff(time)))
     torque = servo_torque(arm, period, angle, target, told)
-    inertia, stiffness = _inertia_along(arm, angle), joint_stiffness_along(arm, angle)
+    inertia, stiffness = inertia_along(arm, angle), joint_stiffness_along(arm, angle)
     return tuple(
         _joint(track, j, drive, time, angle, target, told, torque, inertia, stiffness)
         for j, drive in enumerate(arm.drives)
@@ -144,7 +144,7 @@ def friction_alone(arm: Arm, track: LapTrack, stiffness: FloatArray) -> BoolArra
     """
     from armeval.kernels.friction_alone import rests_by_friction
 
-    told, inertia, damping = target_speed(track), _inertia_along(arm, track.angle), _damping_along(arm, track.angle)
+    told, inertia, damping = target_speed(track), inertia_along(arm, track.angle), _damping_along(arm, track.angle)
     rests = [
         rests_by_friction(
             track.time,
@@ -172,7 +172,7 @@ def _damping_along(arm: Arm, angle: FloatArray) -> FloatArray:
     return _between(at, np.einsum("pcj,c,pcj->pj", J, np.asarray(arm.servo.tip_damping), J), len(angle))
 
 
-def _inertia_along(arm: Arm, angle: FloatArray) -> FloatArray:
+def inertia_along(arm: Arm, angle: FloatArray) -> FloatArray:
     """Inertia of each joint with the others held, rotors included, along a lap: shape (k, n) [kg m^2]."""
     from armeval.kernels.dynamics import mass_matrix_and_bias
 

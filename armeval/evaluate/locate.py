@@ -220,7 +220,7 @@ def locate(
         events = [event for track in laps for event in sticking_events(arm, track, rule)]
         events = find_causes(arm, laps, events, rule=rule, compensation=compensation, counterfactual=counterfactual)
         merged = tuple(
-            replace(region, action=action(arm, region, laps, compensation=compensation))
+            replace(region, action=action(arm, region, laps, events, compensation=compensation))
             for region in regions(laps, events)
         )
         runs.append(RunSticking(first.run, first.compensated, first.source, len(laps), tuple(events), merged))

@@ -10,6 +10,9 @@ import numpy as np
 from armeval.arrays import BoolArray, FloatArray, IntArray
 from armeval.model.trial import StickingRule
 
+RELEASE_WINDOW = 0.050
+"""Within this time [s] after a rest its release is measured."""
+
 
 @dataclass(frozen=True)
 class Rest:

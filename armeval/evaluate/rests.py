@@ -1,27 +1,27 @@
-"""The sticking events of a lap: rests found joint by joint, and all that the lap tells about each."""
+"""The sticking events of a lap: rests and jumps found joint by joint, and all that the lap tells about each."""
 
 from __future__ import annotations
+
+from typing import Literal
 
 import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.evaluate.joint_in_log import joints_in_log, target_speed
+from armeval.evaluate.jumps import jumps
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.rest import Rest, rests_by_speed
+from armeval.evaluate.rest import RELEASE_WINDOW, Rest, rests_by_speed
 from armeval.evaluate.rests_in_counts import rests_in_counts
 from armeval.evaluate.servo_torque import servo_pull
 from armeval.evaluate.sticking_event import StickingEvent
 from armeval.model.arm import Arm
 from armeval.model.trial import StickingRule
 
-RELEASE_WINDOW = 0.050
-"""Within this time [s] after a rest its release is measured."""
-
 _BEFORE = 0.1  # s: how far back a reversal of the target counts as the reason that the pull must build up anew
 
 
 def sticking_events(arm: Arm, track: LapTrack, rule: StickingRule) -> tuple[StickingEvent, ...]:
-    """Find every rest of a lap, joint by joint, and measure it.
+    """Find every rest and every jump of a lap, joint by joint, and measure it.
 
     Parameters
     ----------
@@ -37,25 +37,31 @@ def sticking_events(arm: Arm, track: LapTrack, rule: StickingRule) -> tuple[Stic
     The events in order of time, their causes not yet looked for.
     """
     told = target_speed(track)
-    if track.speed is not None:
-        found = [
-            rests_by_speed(track.time, track.angle[:, j], track.speed[:, j], told[:, j], rule)
-            for j in range(arm.chain.count)
-        ]
-    else:
-        found = [rests_in_counts(joint, rule) for joint in joints_in_log(arm, track)]
-    events = [_measured(arm, track, j, rest, told[:, j], rule) for j, rests in enumerate(found) for rest in rests]
+    logged = joints_in_log(arm, track) if track.speed is None else ()
+    events: list[StickingEvent] = []
+    for j, drive in enumerate(arm.drives):
+        time, angle, target, speed = track.time, track.angle[:, j], track.target[:, j], told[:, j]
+        if track.speed is not None:
+            rests = list(rests_by_speed(time, angle, track.speed[:, j], speed, rule))
+        else:
+            rests = list(rests_in_counts(logged[j], rule))
+        skips = jumps(drive, time, angle, target, speed, rests, rule, float(track.resolution[j]))
+        events += [_measured(arm, track, j, "rest", rest, speed, rule) for rest in rests]
+        events += [_measured(arm, track, j, "jump", jump, speed, rule) for jump in skips]
     return tuple(sorted(events, key=lambda event: (event.start, event.joint)))
 
 
-def _measured(arm: Arm, track: LapTrack, j: int, rest: Rest, told: FloatArray, rule: StickingRule) -> StickingEvent:
+def _measured(
+    arm: Arm, track: LapTrack, j: int, kind: Literal["rest", "jump"], rest: Rest, told: FloatArray, rule: StickingRule
+) -> StickingEvent:
     """Read everything else about a rest off the lap."""
     time = track.time
     first, last = (int(i) for i in np.clip(np.searchsorted(time, (rest.start, rest.end)), 0, len(time) - 1))
     direction = float(np.sign(track.target[last, j] - track.target[first, j])) or 1.0
-    after = slice(last, max(last + 1, int(np.searchsorted(time, rest.end + RELEASE_WINDOW, side="right"))))
+    sets_off = last if kind == "rest" else first
+    after = slice(sets_off, max(last + 1, int(np.searchsorted(time, rest.end + RELEASE_WINDOW, side="right"))))
     turned = track.angle[after, j] - rest.angle
-    moved = np.linalg.norm(track.tip[after] - track.tip[last], axis=1)
+    moved = np.linalg.norm(track.tip[after] - track.tip[sets_off], axis=1)
     ends = [first, last]
     pull = direction * servo_pull(arm, track.angle[ends], track.target[ends])[:, j]
     drive = arm.drives[j]
@@ -64,7 +70,7 @@ def _measured(arm: Arm, track: LapTrack, j: int, rest: Rest, told: FloatArray, r
         lap=track.lap,
         source=track.source,
         joint=drive.joint,
-        kind="rest",
+        kind=kind,
         start=rest.start,
         end=rest.end,
         start_error=rest.start_error,
@@ -76,7 +82,7 @@ def _measured(arm: Arm, track: LapTrack, j: int, rest: Rest, told: FloatArray, r
         angle_error=rest.angle_error,
         direction=direction,
         target_speed=float(np.mean(np.abs(told[first : last + 1]))),
-        lag=float(track.lag[last] - track.lag[first]),
+        lag=_fallen_behind(track, first, last),
         release_angle=float(turned[np.argmax(np.abs(turned))]),
         release_distance=float(moved.max()),
         pull_start=float(pull[0]),
@@ -84,6 +90,15 @@ def _measured(arm: Arm, track: LapTrack, j: int, rest: Rest, told: FloatArray, r
         reversal=_after_reversal(time, told, first, direction, rule),
         probability=rest.probability,
     )
+
+
+def _fallen_behind(track: LapTrack, first: int, last: int) -> float:
+    """How far the tip falls further behind between two samples, along the way that its target goes meanwhile [m]."""
+    way = track.target_tip[last] - track.target_tip[first]
+    length = float(np.linalg.norm(way))
+    if length == 0.0:
+        return 0.0
+    return float((way - (track.tip[last] - track.tip[first])) @ way / length)
 
 
 def _after_reversal(time: FloatArray, told: FloatArray, first: int, direction: float, rule: StickingRule) -> bool:

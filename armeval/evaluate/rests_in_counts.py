@@ -24,11 +24,12 @@ from armeval.model.trial import StickingRule
 LEAST_COUNTS = 2.8
 """While it rests, a joint's target must move by this many counts: three, less what rounding takes at both ends."""
 
-_PARTICLES = 2048
+_PILOT, _PARTICLES = 512, 2048  # simulated joints: the many follow only where some of the few have rested
+_HOPELESS = 0.01  # probability of rest below which the few decide
 _LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.060, 0.010  # s of the log before and after the still counts that are looked at
 _EDGE = 0.080  # s: further inside a long stretch of still counts, every fifth sample will do
 _DWELL_SHARE = 0.8  # a rest counts from this share of the least dwell: its ends are uncertain by a few milliseconds
-_PEAK, _FLANK = 0.6, 0.4  # probability that a rest must reach, and where it begins and ends
+_PEAK, _FLANK = 0.5, 0.4  # probability that a rest must reach, and where it begins and ends
 _TOLERANCE = 0.2  # counts by which a simulated joint may miss a reading of an encoder without jitter, one sigma
 _NO_JITTER = 0.05  # counts, one sigma: less is none
 _ODD_READINGS = 1e-4  # share of readings that may be anything
@@ -163,23 +164,28 @@ def _rest_probability(joint: JointInLog, rule: StickingRule) -> tuple[FloatArray
     still = still[(path[ends] - path[still[:, 0]] >= LEAST_COUNTS) & long_enough]
     bound = rule.speed_share * np.maximum(np.abs(joint.told), rule.least_target_speed)
     misfit = _misfit(jitter)
-    first, normals = even_normals(_PARTICLES, 0), normal_pool(0)
+    starts, normals = [even_normals(count, 0) for count in (_PILOT, _PARTICLES)], normal_pool(0)
 
     def weigh(stretch: IntArray) -> tuple[IntArray, FloatArray]:
         samples = _window(joint, stretch)
-        found = rest_probability(
-            samples,
-            joint.time,
-            joint.counts,
-            joint.torque,
-            bound,
-            joint.count,
-            misfit,
-            _prior(joint, int(samples[0]), stretch, jitter),
-            _DWELL_SHARE * rule.least_dwell,
-            first,
-            normals,
-        )
+        prior = _prior(joint, int(samples[0]), stretch, jitter)
+        least = _DWELL_SHARE * rule.least_dwell
+        for first in starts:
+            found = rest_probability(
+                samples,
+                joint.time,
+                joint.counts,
+                joint.torque,
+                bound,
+                joint.count,
+                misfit,
+                prior,
+                least,
+                first,
+                normals,
+            )
+            if found[0].max() < _HOPELESS:
+                break
         return samples, found
 
     for samples, found in spread(weigh, list(still)):

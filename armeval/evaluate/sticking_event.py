@@ -54,9 +54,9 @@ class StickingEvent:
     target_speed
         Mean speed of the joint's target meanwhile [rad/s], not negative.
     lag
-        Distance along the path by which the tip fell further behind its target during the rest [m].
+        Distance by which the tip fell further behind during the rest, along the way that its target went [m].
     release_angle, release_distance
-        Signed joint angle [rad or m] and tip distance [m] moved at most within 50 ms after the rest.
+        Signed joint angle [rad or m] and tip distance [m] moved at most within 50 ms after the rest, or in the jump.
     pull_start, pull_end
         Stiffness part of the servo's torque [N m], positive along ``direction``, at start and end of the rest.
     reversal
