@@ -15,7 +15,14 @@ if TYPE_CHECKING:
 def predict(
     file: TrialFile,
     substeps: Annotated[int, typer.Option("--substeps", metavar="N", min=1, help="Time steps in a servo period.")] = 1,
-    seed: Annotated[int, typer.Option("--seed", metavar="S", help="Of the noise on the compensation table.")] = 0,
+    members: Annotated[
+        int,
+        typer.Option("--members", metavar="N", min=0, help="How sure is it? Replay N arms drawn from [uncertainty]."),
+    ] = 0,
+    seed: Annotated[
+        int,
+        typer.Option("--seed", metavar="S", min=0, help="Of the noise on the compensation table and of the members."),
+    ] = 0,
     out: OutFolder = None,
     as_json: AsJson = False,
     force: Force = False,
@@ -28,8 +35,10 @@ def predict(
 
     with ProgressBar() as progress:
         trial = read_trial(file, logs=False)
-        prediction = predict_trial(trial, substeps=substeps, seed=seed, progress=progress)
+        prediction = predict_trial(trial, substeps=substeps, seed=seed, members=members, progress=progress)
     tables = {"predicted": prediction.to_frame()}
+    if members:
+        tables["bands"] = prediction.bands_frame()
     hand_over(
         prediction,
         prediction_text(prediction),
@@ -57,4 +66,34 @@ def prediction_text(prediction: Prediction) -> str:
     parts.append(text_table(["run", "joint", "largest sticking ratio", "at s", "so it"], rows))
     rows = [[run.name, length_text(run.slow.tracking_rms), f"{len(run.slow.jumps)}"] for run in prediction.runs]
     parts.append(text_table(["run", "rms if moved very slowly", "jumps then"], rows))
-    return "\n\n".join(parts)
+    return "\n\n".join([*parts, *_ensemble_tables(prediction)])
+
+
+def _ensemble_tables(prediction: Prediction) -> list[str]:
+    """Write what the members say: intervals of each RMS, then where each joint is likeliest to stick."""
+    import numpy as np
+
+    from armeval.cli.text_table import text_table
+    from armeval.units import length_text
+
+    known = [(run.name, run.ensemble) for run in prediction.runs if run.ensemble is not None]
+    if not known:
+        return []
+    errors, sticking = [], []
+    for name, found in known:
+        for kind, rms, (low, high) in (
+            ("tracking", found.tracking, found.tracking_interval),
+            ("path deviation", found.deviation, found.deviation_interval),
+        ):
+            interval = f"{length_text(low)} to {length_text(high)}"
+            errors.append([name, kind, length_text(float(np.median(rms))), interval])
+        for joint, share in zip(found.joints, found.sticking, strict=True):
+            at = length_text(float(found.arc[share.argmax()]), 4) if share.any() else ""
+            sticking.append([name, joint, f"{share.mean():.0%}", f"{share.max():.0%}", at])
+    first = known[0][1]
+    members = f"{first.members} arms as they may be, drawn from the trial's [uncertainty] with seed {first.seed}"
+    return [
+        members,
+        text_table(["run", "error", "median rms", "rms of 95 % of the arms"], errors),
+        text_table(["run", "joint", "probability of sticking, mean", "largest", "at s"], sticking),
+    ]

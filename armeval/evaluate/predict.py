@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 from armeval.errors import InputError
 from armeval.evaluate.cause import Counterfactual, Removable
 from armeval.evaluate.document import JsonValue, as_text, document
+from armeval.evaluate.ensemble import Ensemble, ensemble
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.modelled_arm import modelled, unmapped
 from armeval.evaluate.plan import plan_trial
@@ -43,12 +44,15 @@ class PredictedRun:
         Sticking ratio of every joint along the path.
     saturated
         Share of servo periods in which each joint's torque was cut at its limit, in the chain's order.
+    ensemble
+        How sure all this is, from replays of arms that differ in what nobody knows exactly; None where not asked for.
     """
 
     errors: RunErrors
     slow: Quasistatic
     ratio: StickingRatio
     saturated: tuple[float, ...]
+    ensemble: Ensemble | None = None
 
     @property
     def name(self) -> str:
@@ -72,6 +76,7 @@ class PredictedRun:
             "sticking_ratio": self.ratio.to_document(),
             "quasistatic": self.slow.to_document(),
             "saturated_share": list(self.saturated),
+            "ensemble": None if self.ensemble is None else self.ensemble.to_document(),
         }
 
 
@@ -119,6 +124,15 @@ class Prediction:
         """One row a run and kind of error, lengths in metres."""
         return runs_frame([run.errors for run in self.runs])
 
+    def bands_frame(self) -> pd.DataFrame:
+        """One row a run and stretch of path: band of the tracking error [m], each joint's probability of sticking."""
+        import pandas as pd
+
+        bands = [(run.name, run.ensemble.to_frame()) for run in self.runs if run.ensemble is not None]
+        for name, band in bands:
+            band.insert(0, "run", name)
+        return pd.concat([band for _, band in bands], ignore_index=True) if bands else pd.DataFrame()
+
     def to_document(self) -> dict[str, JsonValue]:
         """Give the JSON document."""
         content = {"substeps": self.substeps, "runs": [run.to_document() for run in self.runs]}
@@ -135,6 +149,8 @@ def predict(
     trajectory: Trajectory | None = None,
     substeps: int = 1,
     seed: int = 0,
+    members: int = 0,
+    threads: int | None = None,
     progress: Progress = silent,
 ) -> Prediction:
     """Predict the tip error of every run of a trial and where its joints will stick.
@@ -148,9 +164,14 @@ def predict(
     substeps
         Time steps in a servo period.
     seed
-        Of the noise on the compensation table.
+        Of the noise on the compensation table, and of the members.
+    members
+        How many possible arms each run is replayed with, drawn from the trial's ``uncertainty``; the same arms for
+        every run, whatever the number of threads. 0: none.
+    threads
+        How many blocks of members are replayed at once; None: one a core.
     progress
-        Told after each run.
+        Told after each run, and after each block of members.
 
     Raises
     ------
@@ -162,7 +183,11 @@ def predict(
     runs = []
     for done, run in enumerate(trial.runs):
         progress("predicting", done, len(trial.runs))
-        runs.append(_predict_run(trial, plan, run, substeps, seed))
+        predicted = _predict_run(trial, plan, run, substeps, seed)
+        if members:
+            possible = _ensemble(trial, plan, run, substeps, seed, members, threads, progress)
+            predicted = replace(predicted, ensemble=possible)
+        runs.append(predicted)
     progress("predicting", len(runs), len(runs))
     return Prediction(
         trial=trial.title,
@@ -177,10 +202,35 @@ def predict(
 def _predict_run(trial: Trial, plan: Trajectory, run: Run, substeps: int, seed: int) -> PredictedRun:
     lap, saturated = _replayed(trial, trial.arm, plan, run, substeps, seed, Causes())
     return PredictedRun(
-        errors=run_errors([lap]),
+        errors=run_errors([lap], plan),
         slow=quasistatic(trial.arm, plan, compensated=run.compensated, compensation=trial.compensation, seed=seed),
         ratio=sticking_ratio(trial.arm, plan, compensated=run.compensated, compensation=trial.compensation, seed=seed),
         saturated=saturated,
+    )
+
+
+def _ensemble(
+    trial: Trial,
+    plan: Trajectory,
+    run: Run,
+    substeps: int,
+    seed: int,
+    members: int,
+    threads: int | None,
+    progress: Progress,
+) -> Ensemble:
+    return ensemble(
+        trial.arm,
+        plan,
+        compensated=run.compensated,
+        members=members,
+        seed=seed,
+        compensation=trial.compensation,
+        spreads=trial.uncertainty,
+        rule=trial.sticking,
+        substeps=substeps,
+        threads=threads,
+        progress=lambda _, done, total: progress(f"members of run {run.name}", done, total),
     )
 
 
