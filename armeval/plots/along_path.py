@@ -6,7 +6,7 @@ import numpy as np
 from matplotlib.axes import Axes
 
 from armeval.evaluate.along_path import ErrorAlongPath
-from armeval.plots.style import Stroke
+from armeval.plots.style import Stroke, label_text
 
 
 def along_path_plot(error: ErrorAlongPath, ax: Axes, *, stroke: Stroke, label: str, band: bool = True) -> Axes:
@@ -24,7 +24,7 @@ def along_path_plot(error: ErrorAlongPath, ax: Axes, *, stroke: Stroke, label: s
         Whether the band over the laps is drawn.
     """
     s = 1e3 * error.arc
-    ax.plot(s, 1e3 * error.rms, color=stroke.color, linestyle=stroke.linestyle, linewidth=1.0, label=label)
+    ax.plot(s, 1e3 * error.rms, color=stroke.color, linestyle=stroke.linestyle, linewidth=1.0, label=label_text(label))
     if band and len(error.laps) > 1:
         ax.fill_between(s, 1e3 * error.low, 1e3 * error.high, color=stroke.color, alpha=0.15, linewidth=0.0)
     half = 0.5 * float(s[1] - s[0]) if len(s) > 1 else float(s[0])

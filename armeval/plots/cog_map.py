@@ -9,7 +9,7 @@ from matplotlib.projections.polar import PolarAxes
 
 from armeval.arrays import FloatArray
 from armeval.model.cogmap import CogMap
-from armeval.plots.style import INK, QUIET, Stroke
+from armeval.plots.style import INK, QUIET, Stroke, label_text
 
 
 def cog_map_plot(cog_map: CogMap, ax: PolarAxes, *, rests: Sequence[tuple[FloatArray, Stroke, str]] = ()) -> PolarAxes:
@@ -32,7 +32,7 @@ def cog_map_plot(cog_map: CogMap, ax: PolarAxes, *, rests: Sequence[tuple[FloatA
     ring = 1.35 * reach
     for lane, (angles, stroke, name) in enumerate(rests):
         radius = np.full(len(angles), ring + 0.3 * reach * lane)
-        ax.plot(angles, radius, stroke.marker, color=stroke.color, markersize=3.0, label=name, alpha=0.8)
+        ax.plot(angles, radius, stroke.marker, color=stroke.color, markersize=3.0, label=label_text(name), alpha=0.8)
     ax.set_ylim(-2.2 * reach, ring + 0.3 * reach * max(1, len(rests)))
     ax.set_yticks([-reach, 0.0, reach], [])
     ax.set_thetagrids(range(0, 360, 90))

@@ -29,6 +29,7 @@ def pose_plot(path: FloatArray, skeleton: FloatArray, ax: Axes, *, view: View) -
     (joints,) = ax.plot(across[:-1], up[:-1], "o", color=INK, markerfacecolor="white", markersize=4.5)
     arm.set_gid("arm")
     joints.set_gid("arm-joints")
+    ax.margins(0.08)
     view.set_up(ax)
     ax.set_xlabel(ax.get_xlabel().replace(" in the base frame", ""))
     ax.set_ylabel(ax.get_ylabel().replace(" in the base frame", ""))

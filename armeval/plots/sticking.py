@@ -45,6 +45,7 @@ def region_lanes(
         ax.broken_barh(
             spans,
             (lane - 0.3, 0.6),
+            gid=f"region-lane-{lane}",
             facecolor=stroke.color if solid else "white",
             edgecolor=stroke.color,
             linewidth=0.0 if solid else 0.7,
@@ -54,7 +55,7 @@ def region_lanes(
             number, (1e3 * place, -0.3), xytext=(0, 1.5), textcoords="offset points", ha="center", fontsize=8
         )
         text.set_gid(f"region-number-{number}")
-    ax.set_yticks(range(len(lanes)), [label_text(name, 12) for name, _, _ in lanes])
+    ax.set_yticks(range(len(lanes)), [label_text(name, 12) for name, _, _ in lanes], fontsize=8)
     ax.set_ylim(len(lanes) - 0.5, -0.95 if numbers else -0.5)
     ax.set_xlim(0.0, 1e3 * length)
     ax.set_xlabel("path length s [mm]")

@@ -110,7 +110,7 @@ def strip_figure(width: float, heights: Sequence[float], *, above: float = 0.08)
     from matplotlib.backends.backend_agg import FigureCanvasAgg
     from matplotlib.figure import Figure
 
-    left, right, below, between = 0.78, 0.12, 0.46, 0.16
+    left, right, below, between = 0.92, 0.12, 0.46, 0.16
     height = above + sum(heights) + between * (len(heights) - 1) + below
     made = Figure(figsize=(width, height))
     FigureCanvasAgg(made)

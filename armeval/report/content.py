@@ -10,7 +10,7 @@ from armeval.evaluate.document import JsonValue, plain
 from armeval.evaluate.joint_shares import JointShare, joint_shares
 from armeval.evaluate.measure import BLIND_SPOT
 from armeval.progress import Progress, silent
-from armeval.report import figures, tables
+from armeval.report import joint_figures, path_figures, tables
 from armeval.report.answers import Answers
 from armeval.report.drawing import Drawing, render
 from armeval.report.evidence import evidence
@@ -78,16 +78,16 @@ def content_of(answers: Answers, *, command: str = "", progress: Progress = sile
     runs = shown_runs(answers)
     arm = answers.trial.arm
     shares = [joint_shares(arm, run.errors.tracks) for run in runs]
-    spectra = figures.spectra(answers, runs)
+    spectra = joint_figures.spectra(answers, runs)
     plans = [
-        figures.path_figure(answers, runs),
-        figures.summary_figure(runs),
-        figures.along_figure(answers, runs),
-        figures.joints_figure(answers, runs),
-        figures.pose_figure(answers, runs),
-        figures.cog_maps_figure(answers, runs),
-        figures.orders_figure(answers, spectra),
-        figures.event_figure(answers, runs),
+        path_figures.path_figure(answers, runs),
+        path_figures.summary_figure(runs),
+        path_figures.along_figure(answers, runs),
+        joint_figures.joints_figure(answers, runs),
+        path_figures.pose_figure(answers, runs),
+        joint_figures.cog_maps_figure(answers, runs),
+        joint_figures.orders_figure(answers, spectra),
+        joint_figures.event_figure(answers, runs),
     ]
     wanted = [plan for plan in plans if plan is not None]
     drawings = {}
@@ -141,6 +141,8 @@ def _missing(answers: Answers, runs: Sequence[ShownRun], drawings: Mapping[str, 
         said["cog-maps"] = "No joint has a cog map, so no cogging is predicted and no rest can be held against one."
     if "orders" not in drawings:
         said["orders"] = "The motors turned too little to tell orders of their error apart."
+    if "joints" not in drawings:
+        said["joints"] = "No joint rested, and without a cog map no sticking is predicted: there is nothing to draw."
     if not any(run.sticking.events for run in runs):
         said["sticking"] = "No joint rested while it was told to move."
     return said

@@ -23,6 +23,7 @@ _METADATA = re.compile(r"\s*<metadata>.*?</metadata>", re.DOTALL)
 _SIZE = re.compile(r'<svg\b[^>]*?viewBox="(?P<box>[^"]*)"[^>]*>')
 _ID = re.compile(r'\b(id|xlink:href)="(#?)')
 _URL = re.compile(r"url\(#")
+_TAG = re.compile(r"<[^>]*>")
 _NUMBER = re.compile(r"-?\d+\.\d{3,}")
 _LINES = re.compile(r"\n\s*")
 
@@ -141,9 +142,13 @@ def _inline(svg: str, prefix: str, plan: Plan, figure: Figure) -> str:
         f'<svg class="{plan.kind}" role="img" aria-label="{escape(plan.alternative)}" '
         f'viewBox="{found["box"]}" xmlns:xlink="http://www.w3.org/1999/xlink"{data}>'
     )
-    return _LINES.sub("\n", _rounded(head + body[found.end() :])).strip()
+    return head + _LINES.sub("\n", _rounded(body[found.end() :])).rstrip()
 
 
 def _rounded(svg: str) -> str:
     """Cut coordinates to hundredths of a point: finer is not seen, and differs between machines."""
-    return _NUMBER.sub(lambda number: f"{float(number[0]):.2f}".rstrip("0").rstrip("."), svg)
+    return _TAG.sub(lambda tag: _NUMBER.sub(_cut, tag[0]), svg)
+
+
+def _cut(number: re.Match[str]) -> str:
+    return f"{float(number[0]):.2f}".rstrip("0").rstrip(".")

@@ -11,7 +11,7 @@ from armeval.evaluate.document import JsonValue, plain
 from armeval.evaluate.lap_track import LapTrack
 from armeval.kernels.chain import skeletons
 from armeval.report.answers import Answers
-from armeval.report.figures import along
+from armeval.report.path_figures import along
 from armeval.report.shown import ShownRun
 
 PLACES = 600
@@ -24,7 +24,7 @@ def linked_data(answers: Answers, runs: Sequence[ShownRun]) -> dict[str, JsonVal
     -------
     Lengths in millimetres, angles in degrees, times in seconds, rounded to what can be read off: path length ``s``,
     planned ``time``, ``arm`` (base, joints and tip as x, y, z), ``joints`` (target angles), for each run the ``error``
-    as its strip draws it and the ``tip`` of its first lap, and the ``regions`` of the first run.
+    as its strip draws it and the ``tip`` of its first lap, and the ``regions`` of all runs, the first run's first.
     """
     plan, arm = answers.trajectory, answers.trial.arm
     s = plan.length * (np.arange(PLACES) + 0.5) / PLACES
@@ -53,11 +53,13 @@ def linked_data(answers: Answers, runs: Sequence[ShownRun]) -> dict[str, JsonVal
         ],
         "regions": [
             {
-                "name": f"{region.joint}, {1e3 * region.start_arc:.0f} to {1e3 * region.end_arc:.0f} mm",
+                "run": k,
+                "joint": region.joint,
                 "start": round(1e3 * region.start_arc, 1),
                 "end": round(1e3 * region.end_arc, 1),
             }
-            for region in runs[0].sticking.regions
+            for k, run in enumerate(runs)
+            for region in run.sticking.regions
         ],
     }
 

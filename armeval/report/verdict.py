@@ -31,6 +31,8 @@ def interval(summary: ErrorSummary) -> str:
 
 def laps_text(runs: Sequence[ShownRun]) -> str:
     """Say how many laps stand behind a comparison."""
+    if runs[0].source == "prediction":
+        return "one replayed lap each" if len(runs) > 1 else "one replayed lap"
     counts = [run.laps for run in runs]
     if len(set(counts)) == 1:
         each = " each" if len(counts) > 1 else ""
@@ -49,25 +51,26 @@ def verdict(answers: Answers, runs: Sequence[ShownRun]) -> str:
             f"{millimetres(run.errors.tracking.rms)} mm (95 % interval {interval(run.errors.tracking)}). "
             + _no_pair(answers)
         )
-    before, after = runs
-    low, high = compared.tracking_reduction_low, compared.tracking_reduction_high
-    change = compared.tracking_reduction
-    moved = "fell" if change > 0.0 else "rose"
-    direction = "less" if change > 0.0 else "more"
-    first, last = sorted((abs(low), abs(high))) if low * high > 0.0 else (low, high)
-    how = "" if before.source == "log" else "Predicted, not measured: "
-    sentence = (
-        f"{how}RMS tracking error {moved} from {millimetres(before.errors.tracking.rms)} mm ({before.name}) "
-        f"to {millimetres(after.errors.tracking.rms)} mm ({after.name}), {percent(abs(change))} {direction} "
+    before, after = (run.errors.tracking for run in runs)
+    names = [run.name for run in runs]
+    change, low, high = (
+        compared.tracking_reduction,
+        compared.tracking_reduction_low,
+        compared.tracking_reduction_high,
     )
-    if low <= 0.0 <= high:
-        sentence += (
-            f"(95 % interval of the reduction {percent(low)} to {percent(high)}), over {laps_text(runs)}: "
-            "the interval includes no change, so a difference is not shown."
+    told = "" if runs[0].source == "log" else "Predicted, not measured: "
+    if not (low > 0.0 or high < 0.0):
+        return (
+            f"{told}RMS tracking error is {millimetres(before.rms)} mm ({names[0]}) and {millimetres(after.rms)} mm "
+            f"({names[1]}), over {laps_text(runs)}: a difference is not shown "
+            f"(95 % interval of the reduction {percent(low)} to {percent(high)})."
         )
-    else:
-        sentence += f"(95 % interval {100.0 * first:.0f} to {percent(last)}), over {laps_text(runs)}."
-    return sentence
+    first, last = sorted((abs(low), abs(high)))
+    return (
+        f"{told}RMS tracking error {'fell' if change > 0.0 else 'rose'} from {millimetres(before.rms)} mm ({names[0]}) "
+        f"to {millimetres(after.rms)} mm ({names[1]}), {percent(abs(change))} {'less' if change > 0.0 else 'more'} "
+        f"(95 % interval {100.0 * first:.0f} to {percent(last)}), over {laps_text(runs)}."
+    )
 
 
 def _no_pair(answers: Answers) -> str:
@@ -85,24 +88,27 @@ def sticking_text(answers: Answers, runs: Sequence[ShownRun]) -> str:
     if not before.regions and not after.regions:
         return "No joint sticks in either run."
     fates = Counter(pair.fate for pair in fates_of(answers, runs))
-    found = len(before.regions)
-    kept = fates["same"] + fates["weaker"]
-    parts = []
-    if found:
-        parts.append(f"{fates['gone']} of {found} stretches where a joint rested are gone, {fates['weaker']} weaker")
-    if fates["new"]:
-        parts.append(f"{fates['new']} new")
-    sentence = ", ".join(parts)
-    if kept + fates["new"] and after.regions:
-        causes = Counter(region.cause for region in after.regions)
-        joints = Counter(region.joint for region in after.regions)
-        top_joint, in_joint = joints.most_common(1)[0]
-        left = len(after.regions)
-        sentence += f"; of the {left} left, {in_joint} are in {top_joint}"
-        top_cause, of_cause = causes.most_common(1)[0]
-        if top_cause != "unexplained":
-            sentence += f", and {of_cause} are put down to {top_cause}"
-    return sentence[0].upper() + sentence[1:] + "."
+    sentence = f"Of {_stretches(len(before.regions))} where a joint rested, {fates['gone']} are gone after compensation"
+    sentence += f" and {fates['weaker']} weaker; {fates['new']} are new."
+    if not before.regions:
+        sentence = (
+            f"No joint rested in {runs[0].name}, but {runs[1].name} has {_stretches(len(after.regions))} of rest."
+        )
+    if not after.regions:
+        return sentence
+    joint, of_joint = Counter(region.joint for region in after.regions).most_common(1)[0]
+    cause, of_cause = Counter(region.cause for region in after.regions).most_common(1)[0]
+    sentence += f" Of the {len(after.regions)} left, {of_joint} are in {joint}; "
+    if cause == "unexplained":
+        return f"{sentence}the cause of {of_cause} is not shown."
+    return f"{sentence}{of_cause} are put down to {_CAUSES.get(cause, cause)}."
+
+
+_CAUSES = {"torque limit": "the torque limit", "joint limit": "a joint limit"}
+
+
+def _stretches(count: int) -> str:
+    return f"{count} stretch{'es' if count != 1 else ''} of the path"
 
 
 def _regions_of(run: ShownRun) -> str:
@@ -110,8 +116,7 @@ def _regions_of(run: ShownRun) -> str:
         return f"No joint sticks in {run.name}."
     joints = Counter(region.joint for region in run.sticking.regions)
     told = ", ".join(f"{count} in {joint}" for joint, count in joints.most_common())
-    total = len(run.sticking.regions)
-    return f"A joint rests on {total} stretch{'es' if total != 1 else ''} of the path: {told}."
+    return f"In {run.name} a joint rests on {_stretches(len(run.sticking.regions))}: {told}."
 
 
 def fates_of(answers: Answers, runs: Sequence[ShownRun]) -> tuple[Counterpart, ...]:
@@ -148,7 +153,9 @@ def worst_text(run: ShownRun) -> str:
         return ""
     region = run.sticking.regions[0]
     place = f"{1e3 * region.start_arc:.0f} to {1e3 * region.end_arc:.0f} mm along the path"
-    rests = f"rests {1e3 * region.dwell:.0f} ms in {region.laps} of {region.of_laps} laps"
+    rests = f"rests {1e3 * region.dwell:.0f} ms"
+    if run.source == "log":
+        rests += f" in {region.laps} of {region.of_laps} laps"
     return (
         f"{region.joint} at {place} in {run.name}: {rests}, "
         f"{significant(100.0 * region.harm, 2)} % of the squared tip error."

@@ -93,6 +93,8 @@
 
   const tell = (s) => {
     const rows = [["path length s", `${s.toFixed(1)} mm`], ["planned time t", `${data.time[place].toFixed(2)} s`]];
+    const inside = data.regions.filter((region) => s >= region.start && s <= region.end).map((region) => `${data.runs[region.run].name}: ${region.joint}`);
+    rows.push(["at rest here", inside.length ? [...new Set(inside)].join(", ") : "none"]);
     for (const joint of data.joints) rows.push([joint.name, `${joint.target[place].toFixed(1)} ${joint.unit}`]);
     for (const run of data.runs) rows.push([`error, ${run.name}`, `${run.error[place].toFixed(2)} mm`]);
     const list = document.createElement("dl");
@@ -128,7 +130,7 @@
     }
     for (const chip of document.querySelectorAll(".chip")) {
       const region = data.regions[Number(chip.dataset.region)];
-      const pressed = region ? !isWhole && start <= region.start && region.end <= end && chip.dataset.region === chosen : isWhole;
+      const pressed = region ? !isWhole && chip.dataset.region === chosen : isWhole;
       chip.setAttribute("aria-pressed", String(pressed));
     }
     show(place);
@@ -163,8 +165,11 @@
     strip.svg.addEventListener("pointerdown", (event) => show(nearest(fromPointer(strip, event))));
     strip.svg.addEventListener("click", (event) => {
       const s = fromPointer(strip, event);
-      const under = data.regions.findIndex((region) => s >= region.start - 1 && s <= region.end + 1);
-      if (under >= 0 && event.target.closest('[id*="region-lanes"]')) choose(under);
+      const lane = event.target.closest('[id*="region-lane-"]');
+      if (!lane) return;
+      const run = Number(lane.id.split("-").pop());
+      const apart = (region) => (region.run === run ? Math.max(region.start - s, s - region.end, 0) : Infinity);
+      choose(data.regions.reduce((best, region, k) => (apart(region) < apart(data.regions[best]) ? k : best), 0));
     });
     strip.svg.addEventListener("keydown", (event) => {
       const moves = { ArrowRight: 1, ArrowUp: 1, ArrowLeft: -1, ArrowDown: -1, PageUp: 20, PageDown: -20 };
