@@ -25,7 +25,7 @@ def feel(
     ] = None,
     members: Annotated[
         int, typer.Option("--members", metavar="N", min=8, help="Of the ensemble of compensation errors.")
-    ] = 64,
+    ] = 200,
     seed: Annotated[int, typer.Option("--seed", metavar="S", help="Of the noise on the compensation table.")] = 0,
     out: OutFolder = None,
     as_json: AsJson = False,

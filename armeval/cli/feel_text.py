@@ -96,9 +96,10 @@ def _spread(met: Feel) -> str:
     spread = met.compensated.spread
     if spread is None:
         return ""
+    low, high = spread.interval
     return (
-        f"from start to start, with index error and map noise anew, it leaves {_newton(spread.median)} "
-        f"({_newton(spread.low)} to {_newton(spread.high)}, nine in ten)"
+        f"from one start to the next, with rotor index, map noise and torque constant anew, it leaves "
+        f"{_newton(spread.median)} ({_newton(low)} to {_newton(high)} in 95 % of {len(spread.rms)} members)"
     )
 
 

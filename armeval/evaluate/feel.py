@@ -171,7 +171,7 @@ def feel(
     trajectory: Trajectory | None = None,
     workspace: bool = False,
     spacing: float | None = None,
-    members: int = 64,
+    members: int = 200,
     seed: int = 0,
     progress: Progress = silent,
 ) -> Feel:

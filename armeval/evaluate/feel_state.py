@@ -126,7 +126,7 @@ class FeelState:
 
 
 def feel_state(
-    trial: Trial, hand: Hand, motion: HandMotion, *, compensated: bool, members: int = 64, seed: int = 0
+    trial: Trial, hand: Hand, motion: HandMotion, *, compensated: bool, members: int = 200, seed: int = 0
 ) -> FeelState:
     """Work out what a hand meets in one state of a trial's arm.
 
@@ -165,7 +165,7 @@ def feel_state(
         per_second=ripple_spectrum(force, found, "hertz"),
         noticed=tuple(_noticed(hand, line, heaviness) for line in found.lines),
         left=left_by(arm, force, law, seed=seed) if compensated else (),
-        spread=ripple_spread(arm, force, law, members=members, seed=seed) if compensated else None,
+        spread=ripple_spread(arm, force, law, spreads=trial.uncertainty, members=members, seed=seed) if compensated else None,
     )
 
 

@@ -23,6 +23,9 @@ from armeval.model.trial import Compensation
 _JOLT = 0.25
 """A change of the tip's speed within one sample by more than this share of the usual speed is a step, not a motion."""
 
+_INNER_RATE = 16e3
+"""Steps a second for the inner motion: where joints catch and let go, a thousand would miss the force by a fifth."""
+
 _STILL = 1e-6
 """A tip slower than this [m/s] has no direction of motion of its own."""
 
@@ -205,7 +208,9 @@ def with_inner_motion(
     """
     from armeval.kernels.led_tip import led_by_the_tip
 
-    k, n = motion.joint.shape
+    parts = max(1, math.ceil(motion.period * _INNER_RATE - 1e-9))
+    tip = _between(motion.tip, parts)
+    k, n = len(tip), arm.chain.count
     tables = net_cogging(arm, compensated=compensated, compensation=compensation, seed=seed)
     joints = joint_records(arm.chain.arrays)
     for name in ("gear_ratio", "stribeck_speed", "coulomb_friction", "viscous_friction"):
@@ -221,8 +226,8 @@ def with_inner_motion(
         joints,
         np.array(arm.gravity),
         np.stack([_cells(table) for table in tables]),
-        np.ascontiguousarray(motion.tip),
-        motion.period,
+        tip,
+        motion.period / parts,
         carries_weight,
         angle,
         speed,
@@ -230,20 +235,29 @@ def with_inner_motion(
     )
     if lost >= 0:
         raise InputError(
-            f"the arm's inner motion grows beyond all bounds at {motion.time[lost]:.3f} s of the hand's motion",
+            f"the arm's inner motion grows beyond all bounds {motion.time[lost // parts]:.3f} s into the hand's motion",
             "check masses and friction, or give a joint path",
         )
     change = np.empty((k, n))
-    change[:-1] = np.diff(speed, axis=0) / motion.period
+    change[:-1] = np.diff(speed, axis=0) * (parts / motion.period)
     change[-1] = change[-2]
+    shown = slice(None, None, parts)
     return replace(
         motion,
-        tip=tip_positions(arm.chain.arrays, angle),
-        joint=angle,
-        joint_speed=speed,
-        joint_acceleration=change,
-        dry_friction=friction,
+        tip=tip_positions(arm.chain.arrays, np.ascontiguousarray(angle[shown])),
+        joint=np.ascontiguousarray(angle[shown]),
+        joint_speed=speed[shown].copy(),
+        joint_acceleration=change[shown].copy(),
+        dry_friction=friction[shown].copy(),
     )
+
+
+def _between(points: FloatArray, parts: int) -> FloatArray:
+    """Points (k, 3) with so many steps from each to the next, by a cubic spline."""
+    from scipy.interpolate import CubicSpline
+
+    number = np.arange((len(points) - 1) * parts + 1) / parts
+    return np.ascontiguousarray(CubicSpline(np.arange(len(points)), points)(number))
 
 
 def _cells(table: FloatArray) -> FloatArray:

@@ -7,11 +7,15 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from armeval.arrays import FloatArray
-from armeval.evaluate.cog_loss import compensation_table, lookup
+from armeval.evaluate.cog_loss import lookup
 from armeval.evaluate.document import JsonValue
-from armeval.evaluate.hand_force import HandForce, cogging_torque, motor_angles, seen_angles, stored_torque
+from armeval.evaluate.hand_force import HandForce, cogging_torque, seen_angles, stored_torque
+from armeval.evaluate.members import clean_tables, drawn_member
+from armeval.evaluate.net_cogging import net_cogging
 from armeval.evaluate.ripple import rms_over_way
+from armeval.kernels.periodic import periodic_values
 from armeval.model.arm import Arm
+from armeval.model.spreads import Spreads
 from armeval.model.trial import Compensation
 
 
@@ -54,7 +58,7 @@ def left_by(arm: Arm, force: HandForce, compensation: Compensation, *, seed: int
 
 @dataclass(frozen=True, eq=False)
 class RippleSpread:
-    """RMS ripple of many members of an ensemble that differ in what nobody knows beforehand.
+    """RMS ripple of many possible arms that differ in what nobody knows exactly.
 
     Attributes
     ----------
@@ -70,50 +74,52 @@ class RippleSpread:
         return float(np.median(self.rms))
 
     @property
-    def low(self) -> float:
-        """One member in twenty is below [N]."""
-        return float(np.quantile(self.rms, 0.05))
-
-    @property
-    def high(self) -> float:
-        """One member in twenty is above [N]."""
-        return float(np.quantile(self.rms, 0.95))
+    def interval(self) -> tuple[float, float]:
+        """Between these [N] lies the RMS ripple of 95 % of the members."""
+        low, high = np.percentile(self.rms, (2.5, 97.5))
+        return float(low), float(high)
 
     def to_document(self) -> dict[str, JsonValue]:
         """Give the entry of the JSON document."""
-        return {"members": len(self.rms), "rms_N": self.median, "rms_low_N": self.low, "rms_high_N": self.high}
+        low, high = self.interval
+        return {"members": len(self.rms), "rms_N": {"median": self.median, "low": low, "high": high}}
 
 
 def ripple_spread(
-    arm: Arm, force: HandForce, compensation: Compensation, *, members: int = 64, seed: int = 0
+    arm: Arm,
+    force: HandForce,
+    compensation: Compensation,
+    *,
+    spreads: Spreads | None = None,
+    members: int = 200,
+    seed: int = 0,
 ) -> RippleSpread:
-    """Let index error and noise of the table vary: each member finds its index anew and has measured its own map.
-
-    Every joint's index error is drawn from a normal distribution with the compensation's one sigma, the noise of each
-    entry of its table with the map's. The motion stays that of ``force``.
+    """Let rotor index, noise of the stored map and torque constant differ from member to member, as a prediction does.
 
     Parameters
     ----------
     arm, force
-        The force is one of this arm, compensated.
-    compensation
-        What the firmware's table can do.
+        The force is one of this arm, compensated. Its motion is every member's, and so is what is singular.
+    compensation, spreads
+        What the firmware's table can do, and how far the members differ.
     members, seed
         How many, and the seed of the draws.
     """
     rng = np.random.default_rng(seed)
-    motion = force.motion
-    angle = motor_angles(arm, seen_angles(arm, motion))
-    true = cogging_torque(arm, motion.joint)
+    joint, seen = force.motion.joint, seen_angles(arm, force.motion)
+    gear = arm.gear_ratio
+    clean = clean_tables(arm, compensation)
+    true_tables = net_cogging(arm)
     rms = np.empty(members)
-    for member in range(members):
-        off = np.zeros_like(true)
-        for i, drive in enumerate(arm.drives):
-            if drive.cog_map is not None:
-                table = compensation_table(drive.cog_map, compensation, rng)
-                shifted = angle[:, i] + compensation.index_error * rng.standard_normal()
-                off[:, i] = drive.gear_ratio * lookup(table, shifted, compensation.interpolation)
-        rms[member] = _rms(force, off - true)
+    for number in range(members):
+        drawn = drawn_member(arm, compensation, spreads or Spreads(), joint[0], clean, rng)
+        left = np.empty_like(joint)
+        for i in range(len(gear)):
+            turned = np.ascontiguousarray(gear[i] * joint[:, i] + drawn.rotor_index[i])
+            looked_up = gear[i] * seen[:, i] + drawn.table_index[i]
+            fed = lookup(drawn.tables[i], looked_up, compensation.interpolation)
+            left[:, i] = gear[i] * (drawn.torque_gain[i] * fed - periodic_values(true_tables[i], turned))
+        rms[number] = _rms(force, left)
     return RippleSpread(np.sort(rms))
 
 

@@ -2,7 +2,7 @@
 
 The hand holds the tip so firmly that it is where the hand wants it at the end of every step: an impulse c (w - J v),
 with w the speed that the tip needs, adds c J^T J to the inertia and c J^T w to the momentum of an otherwise implicit
-step. c is so large against the tip's apparent mass that the tip misses its place by a millionth of the step. Dry
+step. c is so large against the tip's apparent mass that the tip misses its place by picometres. Dry
 friction is the bounded impulse of :mod:`armeval.kernels.friction`, so that joints which the inner motion leaves alone
 rest exactly: while the tip moves, friction holds the inner motion wherever less than its bound is needed for that.
 """
@@ -19,7 +19,7 @@ from armeval.kernels.friction import LARGEST, solve_speeds
 from armeval.kernels.records import Records
 from armeval.kernels.replay import cog_torque
 
-FIRMNESS = 1e7
+FIRMNESS = 1e4
 """The hand's c, over the largest apparent mass that the joints' inertia lets expect."""
 
 
