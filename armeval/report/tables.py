@@ -79,8 +79,8 @@ def joints_table(runs: Sequence[ShownRun], shares: Sequence[tuple[JointShare, ..
     for index, joint in enumerate(joints):
         for run, of_joints in zip(runs, shares, strict=True):
             share = of_joints[index]
-            rests = [event for event in run.sticking.events if event.joint == joint and event.kind == "rest"]
-            jumps = sum(event.joint == joint and event.kind == "jump" for event in run.sticking.events)
+            rests = [rest for rest in run.sticking.events if rest.joint == joint]
+            jumps = sum(jump.joint == joint for jump in run.sticking.jumps)
             rows.append(
                 (
                     joint,
