@@ -8,6 +8,7 @@ more, because a class that it names is gone, counts as empty.
 
 from __future__ import annotations
 
+import contextlib
 import functools
 import hashlib
 from collections.abc import Callable
@@ -51,6 +52,8 @@ def jit_inline(function: Callable[P, R]) -> Callable[P, R]:
 
 def _keep_on_disk(compiled: Any, function: Callable[..., Any]) -> None:
     """Give a compiled function its cache; where numba's inside has changed, numba's own; where none can be, none."""
+    if compiled is function:
+        return  # numba is told not to compile
     try:
         compiled._cache = _kernel_cache()(function)
     except (ImportError, AttributeError, TypeError):
@@ -75,7 +78,8 @@ def _kernel_cache() -> Any:
             try:
                 return super().load_overload(sig, target_context)
             except Exception:  # whatever unpickling raises
-                self.flush()
+                with contextlib.suppress(OSError):
+                    self.flush()
                 return None
 
     return KernelCache
