@@ -3,7 +3,8 @@
 To first order the tip error is the sum over joints of J_i (q_i - q_target,i). The product of each term with the whole
 error, summed over samples, adds up to the squared error: a joint's share is the part of it that goes through the joint.
 A share is negative where a joint makes good what others do. The Jacobian is taken halfway between pose and target,
-which makes the sum exact to second order.
+which makes the sum exact to second order. Where an arm has more joints than the tip has directions, what moves no tip
+is taken out of the joint errors first: of all joint errors that put the tip where it is, the smallest counts.
 """
 
 from __future__ import annotations
@@ -13,8 +14,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from armeval.arrays import FloatArray
 from armeval.evaluate.lap_track import LapTrack
 from armeval.model.arm import Arm
+
+_MOST_SAMPLES = 4000  # of a lap; shares are averages, and neighbouring samples say the same
 
 
 @dataclass(frozen=True)
@@ -59,9 +63,11 @@ def joint_shares(arm: Arm, tracks: Sequence[LapTrack]) -> tuple[JointShare, ...]
     error_square, tip_square = np.zeros(arm.chain.count), np.zeros(arm.chain.count)
     along, whole = np.zeros(arm.chain.count), 0.0
     for track in tracks:
-        error = track.angle - track.target
-        J = tip_jacobians(arm.chain.arrays, np.ascontiguousarray(0.5 * (track.angle + track.target)))
-        through = J * error[:, None, :]
+        some = slice(None, None, max(1, len(track.time) // _MOST_SAMPLES))
+        angle, target = track.angle[some], track.target[some]
+        error = angle - target
+        J = tip_jacobians(arm.chain.arrays, np.ascontiguousarray(0.5 * (angle + target)))
+        through = J * _moving_the_tip(J, error)[:, None, :]
         tip_error = through.sum(axis=2)
         samples += len(error)
         error_square += (error**2).sum(axis=0)
@@ -77,3 +83,11 @@ def joint_shares(arm: Arm, tracks: Sequence[LapTrack]) -> tuple[JointShare, ...]
         )
         for i, joint in enumerate(arm.joints)
     )
+
+
+def _moving_the_tip(J: FloatArray, error: FloatArray) -> FloatArray:
+    """Take out of joint errors of shape (k, n) what moves no tip; J of shape (k, 3, n)."""
+    rank = int(np.linalg.matrix_rank(J[len(J) // 2], rtol=1e-6))
+    if J.shape[2] <= rank:
+        return error
+    return np.asarray(np.einsum("knr,krm,km->kn", np.linalg.pinv(J, rcond=1e-6), J, error))

@@ -5,8 +5,17 @@ from __future__ import annotations
 import numpy as np
 from matplotlib.axes import Axes
 
+from armeval.arrays import FloatArray
 from armeval.evaluate.along_path import ErrorAlongPath
 from armeval.plots.style import Stroke, label_text
+
+
+def band_plot(arc: FloatArray, low: FloatArray, high: FloatArray, ax: Axes, *, stroke: Stroke, label: str = "") -> Axes:
+    """Draw a band of tracking error along the path: arc lengths and its two edges, each of shape (b,) [m]."""
+    ax.fill_between(
+        1e3 * arc, 1e3 * low, 1e3 * high, color=stroke.color, alpha=0.2, linewidth=0.0, label=label_text(label)
+    )
+    return ax
 
 
 def along_path_plot(error: ErrorAlongPath, ax: Axes, *, stroke: Stroke, label: str, band: bool = True) -> Axes:

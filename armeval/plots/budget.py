@@ -30,7 +30,7 @@ def budget_plot(budget: Budget, ax: Axes) -> Axes:
     ax.axvline(0.0, color=INK, linewidth=0.6)
     ax.set_yticks(place, [label_text(f"    {joint}" if joint else cause) for cause, joint in keys])
     for label, (_, joint) in zip(ax.get_yticklabels(), keys, strict=True):
-        label.set(fontsize="small", color=QUIET) if joint else label.set(fontsize="medium")
+        label.set(fontsize=8.5, color=QUIET) if joint else label.set(fontsize=9)
     ax.set_ylim(len(keys) - 0.5, -0.5)
     ends = [1e6 * part.tracking for state in budget.budgets for _, _, part in state.rows()]
     reach = max(*ends, 0.0) - min(*ends, 0.0)
@@ -69,6 +69,6 @@ def _bars(state: RunBudget, keys: list[tuple[str, str]], place: np.ndarray, thic
             xytext=(3.0, 0.0),
             textcoords="offset points",
             va="center",
-            fontsize=6.5,
+            fontsize=8,
             color=INK,
         )

@@ -7,16 +7,17 @@ from dataclasses import dataclass
 
 from matplotlib.axes import Axes
 
-from armeval.evaluate.summary import ErrorSummary
 from armeval.plots.style import INK, Stroke, label_text
 
 
 @dataclass(frozen=True)
 class SummaryRow:
-    """One line of the figure: what it is called, its error, and how it is drawn; an open marker is a prediction."""
+    """One line of the figure: its name, RMS and interval [m], and how it is drawn; an open marker is a prediction."""
 
     label: str
-    error: ErrorSummary
+    rms: float
+    low: float
+    high: float
     stroke: Stroke
     predicted: bool
 
@@ -32,7 +33,7 @@ def summary_plot(rows: Sequence[SummaryRow], ax: Axes) -> Axes:
         Where to draw.
     """
     for place, row in enumerate(rows):
-        rms, low, high = (1e3 * value for value in (row.error.rms, row.error.rms_low, row.error.rms_high))
+        rms, low, high = (1e3 * value for value in (row.rms, row.low, row.high))
         ax.plot([low, high], [place, place], color=row.stroke.color, linewidth=1.6, solid_capstyle="butt")
         ax.plot(
             [rms],
@@ -48,7 +49,7 @@ def summary_plot(rows: Sequence[SummaryRow], ax: Axes) -> Axes:
         )
     ax.set_yticks(range(len(rows)), [label_text(row.label) for row in rows])
     ax.set_ylim(len(rows) - 0.5, -0.5)
-    ax.set_xlim(0.0, 1.25e3 * max(max(row.error.rms, row.error.rms_high) for row in rows))
+    ax.set_xlim(0.0, 1.25e3 * max(max(row.rms, row.high) for row in rows))
     ax.set_xlabel("RMS tracking error [mm]")
     ax.grid(visible=False, axis="y")
     return ax

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from armeval.errors import InputError
+from armeval.evaluate.budget import Budget, budget
 from armeval.evaluate.compare import Comparison, compare
 from armeval.evaluate.document import JsonValue, document
 from armeval.evaluate.locate import Location
@@ -17,6 +18,9 @@ from armeval.evaluate.run_errors import RunErrors
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Trial
 from armeval.progress import Progress, silent
+
+MEMBERS = 64
+"""So many arms as they may be stand behind the predicted band."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -31,6 +35,8 @@ class Answers:
         None where no run has logs.
     prediction, location
         Of every run.
+    budget
+        Which cause accounts for how much of the predicted error.
     before, after
         The two runs that are compared, measured where both have logs, else predicted; None where there is no such pair.
     comparison
@@ -42,6 +48,7 @@ class Answers:
     measurement: Measurement | None
     prediction: Prediction
     location: Location
+    budget: Budget
     before: RunErrors | None
     after: RunErrors | None
     comparison: Comparison | None
@@ -50,7 +57,9 @@ class Answers:
     def warnings(self) -> tuple[str, ...]:
         """What the reader should know, each once."""
         measured = self.measurement.warnings if self.measurement is not None else ()
-        return tuple(dict.fromkeys((*measured, *self.prediction.warnings, *self.location.warnings)))
+        return tuple(
+            dict.fromkeys((*measured, *self.prediction.warnings, *self.location.warnings, *self.budget.warnings))
+        )
 
     def to_document(self) -> dict[str, JsonValue]:
         """Give the JSON document ``armeval/report/1``."""
@@ -58,6 +67,7 @@ class Answers:
             "predict": self.prediction.to_document(),
             "measure": self.measurement.to_document() if self.measurement is not None else None,
             "locate": self.location.to_document(),
+            "budget": self.budget.to_document(),
             "comparison": self.comparison.to_document() if self.comparison is not None else None,
         }
         return document("report", self.trial.title, self.warnings, content)
@@ -84,22 +94,23 @@ def answer(
     """
     plan = plan_trial(trial)
     measurement = measure(trial, trajectory=plan, progress=progress) if has_logs(trial) else None
-    prediction = predict(trial, trajectory=plan, progress=progress)
+    prediction = predict(trial, trajectory=plan, members=MEMBERS, progress=progress)
     location = locate_trial(trial, measurement, prediction)
+    shares = budget(trial, trajectory=plan, progress=progress)
     first = _chosen(trial, before, compensated=False)
     second = _chosen(trial, after, compensated=True)
     if first is not None and first == second:
         raise InputError(f"`{first}` cannot be compared with itself", "give two different runs")
     pair = _pair(first, second, measurement, prediction)
     if pair is None:
-        return Answers(trial, plan, measurement, prediction, location, None, None, None)
+        return Answers(trial, plan, measurement, prediction, location, shares, None, None, None)
     source = pair[0].tracks[0].source
     comparison = compare(
         *pair,
         regions_before=_regions(location, pair[0].name, source),
         regions_after=_regions(location, pair[1].name, source),
     )
-    return Answers(trial, plan, measurement, prediction, location, *pair, comparison)
+    return Answers(trial, plan, measurement, prediction, location, shares, *pair, comparison)
 
 
 def _chosen(trial: Trial, name: str | None, *, compensated: bool) -> str | None:

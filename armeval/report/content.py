@@ -20,7 +20,7 @@ from armeval.report.next_steps import Step, next_steps
 from armeval.report.provenance import Provenance, provenance
 from armeval.report.shown import ShownRun, shown_runs
 from armeval.report.tables import Table
-from armeval.report.verdict import blame_text, sticking_text, verdict, worst_text
+from armeval.report.verdict import blame_text, sticking_text, verdict, why_text, worst_text
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -34,8 +34,8 @@ class Content:
     ----------
     answers, runs
         What it is about, and the runs that figures show.
-    verdict, sticking, blame, worst
-        The sentences of the first screen.
+    verdict, sticking, blame, worst, why
+        The sentences of the first screen, and the one that opens the question why.
     merits
         Its figures of merit.
     drawings
@@ -60,6 +60,7 @@ class Content:
     sticking: str
     blame: str
     worst: str
+    why: str
     merits: tuple[Merit, ...]
     drawings: Mapping[str, Drawing]
     tables: Mapping[str, Table]
@@ -86,6 +87,7 @@ def content_of(answers: Answers, *, command: str = "", progress: Progress = sile
         joint_figures.joints_figure(answers, runs),
         path_figures.pose_figure(answers, runs),
         joint_figures.cog_maps_figure(answers, runs),
+        joint_figures.budget_figure(answers),
         joint_figures.orders_figure(answers, spectra),
         joint_figures.event_figure(answers, runs),
     ]
@@ -103,6 +105,7 @@ def content_of(answers: Answers, *, command: str = "", progress: Progress = sile
         sticking=sticking_text(answers, runs),
         blame=blame_text(runs, shares),
         worst=worst_text(runs[0]),
+        why=why_text(answers, runs),
         merits=merits(answers, runs),
         drawings=drawings,
         tables=_tables(answers, runs, shares),
@@ -126,6 +129,9 @@ def _tables(
         "laps": tables.laps_table(answers),
         "joints": tables.joints_table(runs, shares, answers.trial.arm.joints),
         "regions": tables.regions_table(answers, runs),
+        "regions_after": tables.regions_after_table(runs),
+        "causes": tables.causes_table(runs),
+        "routes": tables.routes_table(joint_figures.worst_event(runs)),
         "stretches": tables.stretches_table(runs),
         "criteria": tables.criteria_table(measured),
     }

@@ -9,8 +9,9 @@ import numpy as np
 from armeval.evaluate.intervals import METHOD
 from armeval.evaluate.measure import BLIND_SPOT
 from armeval.report.answers import Answers
+from armeval.report.path_figures import predicted_interval
 from armeval.report.shown import ShownRun
-from armeval.report.verdict import laps_text, millimetres
+from armeval.report.verdict import interval, laps_text, millimetres
 from armeval.units import significant
 
 
@@ -21,7 +22,7 @@ def evidence(answers: Answers, runs: Sequence[ShownRun]) -> tuple[str, ...]:
     if measured:
         said += [f"Intervals: {METHOD}.", _alignment(measured), _resolution(answers, measured)]
         said.append(_sentence(f"what is not seen: {BLIND_SPOT}"))
-        said += _prediction(measured)
+        said += _prediction(answers, measured)
     else:
         said.append("Nothing was measured: a prediction knows only what the arm's files say.")
     return tuple(sentence for sentence in said if sentence)
@@ -72,17 +73,30 @@ def _resolution(answers: Answers, runs: Sequence[ShownRun]) -> str:
     )
 
 
-def _prediction(runs: Sequence[ShownRun]) -> list[str]:
+def _prediction(answers: Answers, runs: Sequence[ShownRun]) -> list[str]:
+    """Hold prediction against measurement: the RMS, and the regions that both find."""
     said = []
     for run in runs:
-        measured, predicted = run.errors.tracking, run.predicted.errors.tracking.rms
-        inside = measured.rms_low <= predicted <= measured.rms_high
+        low, high = predicted_interval(run)
+        measured = run.errors.tracking
+        meet = low <= measured.rms_high and measured.rms_low <= high
         said.append(
-            f"Prediction beside measurement, {run.name}: {millimetres(predicted)} mm predicted, "
-            f"{millimetres(measured.rms)} mm measured; the prediction lies "
-            f"{'within' if inside else 'outside'} the measured interval."
+            f"Prediction beside measurement, {run.name}: {millimetres(low)} to {millimetres(high)} mm predicted, "
+            f"{interval(measured)} measured; the two {'overlap' if meet else 'do not overlap'}. {_found(answers, run)}"
         )
     return said
+
+
+def _found(answers: Answers, run: ShownRun) -> str:
+    places = [answers.location.runs.index(each) for each in (run.sticking, run.predicted_sticking)]
+    for matching in answers.location.matchings:
+        if matching.kind == "prediction" and [matching.first, matching.second] == places:
+            both = sum(pair.first is not None and pair.second is not None for pair in matching.pairs)
+            return (
+                f"Of {len(run.sticking.regions)} measured regions {both} were predicted; "
+                f"{len(run.predicted_sticking.regions) - both} more were predicted and not found in the logs."
+            )
+    return ""
 
 
 def _sentence(text: str) -> str:

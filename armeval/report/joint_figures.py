@@ -10,6 +10,8 @@ from matplotlib.figure import Figure
 
 from armeval.evaluate.cog_orders import expected_orders
 from armeval.evaluate.error_orders import ErrorOrders, error_orders
+from armeval.evaluate.sticking_event import StickingEvent
+from armeval.plots.budget import budget_plot
 from armeval.plots.cog_map import cog_map_plot
 from armeval.plots.error_orders import error_orders_plot
 from armeval.plots.event import event_angle_plot, event_torque_plot
@@ -139,13 +141,39 @@ def orders_figure(answers: Answers, found: Mapping[str, list[tuple[ShownRun, Err
     )
 
 
-def event_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan | None:
-    """Plan the close-up of the longest rest in the most harmful region; None where nothing sticks."""
+def budget_figure(answers: Answers) -> Plan:
+    """Plan the error budget before and after."""
+
+    def draw(width: float) -> Figure:
+        rows = max(len(state.rows()) for state in answers.budget.budgets)
+        made = figure(width, 0.7 + 0.15 * rows * (1 + len(answers.budget.budgets)))
+        budget_plot(answers.budget, made.subplots())
+        return made
+
+    return Plan(
+        "budget",
+        "What each cause, and each joint within it, has in the predicted mean squared tracking error; parts add up to "
+        "the whole. Below 0 a cause takes error away.",
+        draw,
+        "Error budget: part of each cause in the mean squared tracking error, bare and compensated.",
+    )
+
+
+def worst_event(runs: Sequence[ShownRun]) -> tuple[ShownRun, StickingEvent] | None:
+    """Give the strongest rest in the most harmful region, and its run; None where nothing sticks."""
     run = next((run for run in runs if run.sticking.regions), None)
     if run is None:
         return None
+    return run, max(run.sticking.regions[0].events, key=lambda event: event.dwell * event.release_distance)
+
+
+def event_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan | None:
+    """Plan the close-up of the longest rest in the most harmful region; None where nothing sticks."""
+    found = worst_event(runs)
+    if found is None:
+        return None
+    run, event = found
     region = run.sticking.regions[0]
-    event = max(region.events, key=lambda event: event.dwell * event.release_distance)
     track = next(track for track in run.errors.tracks if track.lap == event.lap)
     index = answers.trial.arm.chain.index(event.joint)
     slides = bool(answers.trial.arm.chain.prismatic[index])

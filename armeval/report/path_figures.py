@@ -10,11 +10,11 @@ from matplotlib.figure import Figure
 from armeval.evaluate.along_path import ErrorAlongPath, error_along_path
 from armeval.evaluate.regions import Region
 from armeval.kernels.chain import skeletons
-from armeval.plots.along_path import along_path_plot
+from armeval.plots.along_path import along_path_plot, band_plot
 from armeval.plots.path import mark_stretch, path_plot
 from armeval.plots.pose import pose_plot
 from armeval.plots.sticking import region_lanes
-from armeval.plots.style import figure, strip_figure
+from armeval.plots.style import figure, label_text, strip_figure
 from armeval.plots.summary import SummaryRow, summary_plot
 from armeval.plots.view import broad_view, side_view
 from armeval.report.answers import Answers
@@ -65,8 +65,11 @@ def summary_figure(runs: Sequence[ShownRun]) -> Plan:
     rows = []
     for run in runs:
         if run.source == "log":
-            rows.append(SummaryRow(f"{run.name}, measured", run.errors.tracking, run.stroke, predicted=False))
-        rows.append(SummaryRow(f"{run.name}, predicted", run.predicted.errors.tracking, run.stroke, predicted=True))
+            found = run.errors.tracking
+            label = label_text(f"{run.name}, measured", 24)
+            rows.append(SummaryRow(label, found.rms, found.rms_low, found.rms_high, run.stroke, predicted=False))
+        rms, (low, high) = run.predicted.errors.tracking.rms, predicted_interval(run)
+        rows.append(SummaryRow(label_text(f"{run.name}, predicted", 24), rms, low, high, run.stroke, predicted=True))
 
     def draw(width: float) -> Figure:
         made = figure(width, 0.75 + 0.3 * len(rows))
@@ -75,12 +78,20 @@ def summary_figure(runs: Sequence[ShownRun]) -> Plan:
 
     return Plan(
         "summary",
-        "RMS tracking error with its 95 % interval: filled markers are measured, open ones predicted.",
+        "RMS tracking error. Filled: measured, with the 95 % interval. Open: predicted, with the range of 95 % of "
+        "arms as they may be.",
         draw,
-        "RMS tracking error: " + "; ".join(f"{row.label} {1e3 * row.error.rms:.2f} mm" for row in rows),
+        "RMS tracking error: " + "; ".join(f"{row.label} {1e3 * row.rms:.2f} mm" for row in rows),
         wide=4.6,
         narrow=None,
     )
+
+
+def predicted_interval(run: ShownRun) -> tuple[float, float]:
+    """Give the RMS tracking error [m] between which 95 % of arms as they may be lie; else the replayed lap's own."""
+    if run.predicted.ensemble is not None:
+        return run.predicted.ensemble.tracking_interval
+    return run.predicted.errors.tracking.rms_low, run.predicted.errors.tracking.rms_high
 
 
 def along_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
@@ -99,6 +110,9 @@ def along_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
         for run in runs:
             expected = error_along_path(run.predicted.errors.tracks, length)
             along_path_plot(expected, errors[-1], stroke=run.stroke, label=run.name)
+            if run.predicted.ensemble is not None:
+                band = run.predicted.ensemble.band
+                band_plot(run.predicted.ensemble.arc, band[0], band[-1], errors[-1], stroke=run.stroke)
         top = max(ax.get_ylim()[1] for ax in errors)
         for ax, told in zip(errors, ["measured", "predicted"] if measured else ["predicted"], strict=True):
             ax.set_ylim(0.0, top)
@@ -111,11 +125,12 @@ def along_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
             region_lanes(lanes, axes[-1], length=length, numbers=numbers)
         return made
 
-    told = "Measured: a line over all laps, and a band from the best lap to the worst. Beneath: predicted. "
+    told = "Measured: a line over all laps, and a band from the best lap to the worst. Beneath: predicted, "
+    band = "with a band that holds 90 % of arms as they may be."
     beneath = "At the bottom: where a joint sticks, filled before, outlined after compensation." if with_lanes else ""
     return Plan(
         "along",
-        f"{told if measured else 'Predicted. '}{beneath}".strip(),
+        f"{told if measured else 'Predicted, '}{band} {beneath}".strip(),
         draw,
         "Tracking error of each run against path length, with regions of sticking beneath.",
         data=lambda made: strip_data(made, length),

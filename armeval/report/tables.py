@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -14,6 +14,7 @@ from armeval.evaluate.error_orders import ErrorOrders
 from armeval.evaluate.joint_shares import JointShare
 from armeval.evaluate.regions import Region
 from armeval.evaluate.run_errors import RunErrors, criteria_frame, laps_frame, runs_frame, stretches_frame
+from armeval.evaluate.sticking_event import StickingEvent
 from armeval.report.answers import Answers
 from armeval.report.shown import ShownRun
 from armeval.report.verdict import fates_of, millimetres, percent
@@ -102,22 +103,64 @@ def joints_table(runs: Sequence[ShownRun], shares: Sequence[tuple[JointShare, ..
 
 def regions_table(answers: Answers, runs: Sequence[ShownRun]) -> Table | None:
     """List the most harmful regions of the first run with what became of them; None where nothing sticks."""
-    regions = runs[0].sticking.regions
-    if not regions:
-        return None
     fate: dict[int, str] = {}
     if len(runs) == 2:
         fate = {pair.first: pair.fate for pair in fates_of(answers, runs) if pair.first is not None}
-    rows = [(*_region_cells(k, region), fate.get(k, "–")) for k, region in enumerate(regions[:SHOWN_REGIONS])]
+    return _regions(runs[0], fate)
+
+
+def regions_after_table(runs: Sequence[ShownRun]) -> Table | None:
+    """List the most harmful regions that the second run has; None where there is no second run, or nothing sticks."""
+    return _regions(runs[1], {}) if len(runs) == 2 else None
+
+
+def _regions(run: ShownRun, fate: Mapping[int, str]) -> Table | None:
+    regions = run.sticking.regions
+    if not regions:
+        return None
+    rows = [
+        (*_region_cells(k, region), *([fate.get(k, "–")] if fate else []))
+        for k, region in enumerate(regions[:SHOWN_REGIONS])
+    ]
     head = (
         "no.", "joint", "cause", "from [mm]", "to [mm]", "laps", "rest [ms]", "lag [mm]", "release [mm]",
-        "harm [%]", "afterwards",
+        "harm [%]", *(["afterwards"] if fate else []),
     )  # fmt: skip
     left = len(regions) - SHOWN_REGIONS
     note = "harm: share of the run's squared tip error that falls within the region. "
     if left > 0:
         note += f"{left} more, each less harmful, are in tables/regions.csv."
-    return Table(f"Regions of {runs[0].name}, the most harmful first", head, tuple(rows), words=3, note=note)
+    return Table(f"Regions of {run.name}, the most harmful first", head, tuple(rows), words=3, note=note)
+
+
+def causes_table(runs: Sequence[ShownRun]) -> Table | None:
+    """Count regions and their harm by joint and cause, runs side by side; None where nothing sticks."""
+    keys = dict.fromkeys((region.joint, region.cause) for run in runs for region in run.sticking.regions)
+    rows = []
+    for joint, cause in keys:
+        cells = [joint, cause]
+        for run in runs:
+            same = [region for region in run.sticking.regions if (region.joint, region.cause) == (joint, cause)]
+            cells += [f"{len(same)}", f"{100.0 * sum(region.harm for region in same):.1f}"]
+        rows.append(tuple(cells))
+    if not rows:
+        return None
+    head = ["joint", "cause"]
+    for run in runs:
+        head += [f"{run.name}: regions", "harm [%]"]
+    note = "harm: share of the run's squared tip error that falls within these regions; regions may overlap."
+    return Table("Causes of sticking", tuple(head), tuple(rows), words=2, note=note)
+
+
+def routes_table(found: tuple[ShownRun, StickingEvent] | None) -> Table | None:
+    """Tell what each way of looking says about the rest that is shown close up; None without one."""
+    if found is None or not found[1].routes:
+        return None
+    _, event = found
+    agreeing, able = event.agreement
+    rows = tuple((route.name, route.says, route.text) for route in event.routes)
+    note = f"Put down to {event.cause}: {agreeing} of the {able} ways that could tell say so." if able else ""
+    return Table("Why it rested there", ("way of looking", "says", "because"), rows, words=3, note=note)
 
 
 def _region_cells(place: int, region: Region) -> tuple[str, ...]:
@@ -219,6 +262,12 @@ def frames(
         "along_path": pd.concat([_along(run, "log", length) for run in measured]
                                 + [_along(run, "prediction", length) for run in predicted], ignore_index=True),
     }  # fmt: skip
+    found["budget"] = answers.budget.to_frame()
+    bands = [
+        run.ensemble.to_frame().assign(run=run.name) for run in answers.prediction.runs if run.ensemble is not None
+    ]
+    if bands:
+        found["predicted_band"] = pd.concat(bands, ignore_index=True)
     if measured:
         found["measured"] = runs_frame(measured)
         found["laps"] = laps_frame(measured)

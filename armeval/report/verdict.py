@@ -160,3 +160,18 @@ def worst_text(run: ShownRun) -> str:
         f"{region.joint} at {place} in {run.name}: {rests}, "
         f"{significant(100.0 * region.harm, 2)} % of the squared tip error."
     )
+
+
+def why_text(answers: Answers, runs: Sequence[ShownRun]) -> str:
+    """Say which cause has the largest part of the predicted error in each shown run."""
+    parts = []
+    for run in runs:
+        state = answers.budget.run(run.name)
+        worst = max(state.causes, key=lambda cause: cause.part.tracking)
+        if state.whole.tracking > 0.0 and worst.part.tracking > 0.0:
+            parts.append(
+                f"{worst.cause} accounts for {percent(worst.part.tracking / state.whole.tracking)} of the squared "
+                f"tracking error in {run.name}"
+            )
+    told = "; ".join(parts)
+    return f"By the prediction, {told}." if told else "The prediction has no error to share out."
