@@ -2,28 +2,24 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 from armeval.errors import InputError
-from armeval.evaluate.cause import Counterfactual, Removable
+from armeval.evaluate.cause import Counterfactual
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.evaluate.ensemble import Ensemble, ensemble
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.modelled_arm import modelled, unmapped
 from armeval.evaluate.plan import plan_trial
+from armeval.evaluate.predicted_lap import PredictedLap
 from armeval.evaluate.quasistatic import Quasistatic, quasistatic
-from armeval.evaluate.replay import replay
 from armeval.evaluate.run_errors import RunErrors, run_errors, runs_frame
+from armeval.evaluate.step_error import StepError
 from armeval.evaluate.sticking_ratio import StickingRatio, sticking_ratio
-from armeval.evaluate.tracks import track
-from armeval.model.arm import Arm
-from armeval.model.causes import Causes
-from armeval.model.drive import Drive
 from armeval.model.trajectory import Trajectory
-from armeval.model.trial import Run, Trial
+from armeval.model.trial import Trial
 from armeval.progress import Progress, silent
 
 if TYPE_CHECKING:
@@ -44,6 +40,8 @@ class PredictedRun:
         Sticking ratio of every joint along the path.
     saturated
         Share of servo periods in which each joint's torque was cut at its limit, in the chain's order.
+    step
+        What the time step does to the replay.
     ensemble
         How sure all this is, from replays of arms that differ in what nobody knows exactly; None where not asked for.
     """
@@ -52,6 +50,7 @@ class PredictedRun:
     slow: Quasistatic
     ratio: StickingRatio
     saturated: tuple[float, ...]
+    step: StepError
     ensemble: Ensemble | None = None
 
     @property
@@ -76,6 +75,7 @@ class PredictedRun:
             "sticking_ratio": self.ratio.to_document(),
             "quasistatic": self.slow.to_document(),
             "saturated_share": list(self.saturated),
+            "step_error_rms_m": self.step.rms,
             "ensemble": None if self.ensemble is None else self.ensemble.to_document(),
         }
 
@@ -180,12 +180,13 @@ def predict(
     """
     plan = plan_trial(trial) if trajectory is None else trajectory
     trial = replace(trial, arm=modelled(trial.arm))
+    laps = [PredictedLap(trial.arm, plan, run, trial.compensation, seed, substeps) for run in trial.runs]
     runs = []
-    for done, run in enumerate(trial.runs):
-        progress("predicting", done, len(trial.runs))
-        predicted = _predict_run(trial, plan, run, substeps, seed)
+    for done, lap in enumerate(laps):
+        progress("predicting", done, len(laps))
+        predicted = _predict_run(lap)
         if members:
-            possible = _ensemble(trial, plan, run, substeps, seed, members, threads, progress)
+            possible = _ensemble(trial, lap, members, threads, progress)
             predicted = replace(predicted, ensemble=possible)
         runs.append(predicted)
     progress("predicting", len(runs), len(runs))
@@ -195,98 +196,36 @@ def predict(
         trajectory=plan,
         substeps=substeps,
         warnings=(*map(str, trial.findings), *_doubts(trial, runs)),
-        counterfactuals={run.name: _counterfactual(trial, plan, run, substeps, seed) for run in trial.runs},
+        counterfactuals={lap.run.name: lap.without for lap in laps},
     )
 
 
-def _predict_run(trial: Trial, plan: Trajectory, run: Run, substeps: int, seed: int) -> PredictedRun:
-    lap, saturated = _replayed(trial, trial.arm, plan, run, substeps, seed, Causes())
+def _predict_run(lap: PredictedLap) -> PredictedRun:
+    replayed = lap.replay()
+    compensated, compensation, seed = lap.run.compensated, lap.compensation, lap.seed
     return PredictedRun(
-        errors=run_errors([lap], plan),
-        slow=quasistatic(trial.arm, plan, compensated=run.compensated, compensation=trial.compensation, seed=seed),
-        ratio=sticking_ratio(trial.arm, plan, compensated=run.compensated, compensation=trial.compensation, seed=seed),
-        saturated=saturated,
+        errors=run_errors([lap.track(replayed)], lap.trajectory),
+        slow=quasistatic(lap.arm, lap.trajectory, compensated=compensated, compensation=compensation, seed=seed),
+        ratio=sticking_ratio(lap.arm, lap.trajectory, compensated=compensated, compensation=compensation, seed=seed),
+        saturated=tuple(float(share) for share in replayed.saturated.mean(axis=0)),
+        step=lap.step_error(replayed),
     )
 
 
-def _ensemble(
-    trial: Trial,
-    plan: Trajectory,
-    run: Run,
-    substeps: int,
-    seed: int,
-    members: int,
-    threads: int | None,
-    progress: Progress,
-) -> Ensemble:
+def _ensemble(trial: Trial, lap: PredictedLap, members: int, threads: int | None, progress: Progress) -> Ensemble:
     return ensemble(
-        trial.arm,
-        plan,
-        compensated=run.compensated,
+        lap.arm,
+        lap.trajectory,
+        compensated=lap.run.compensated,
         members=members,
-        seed=seed,
-        compensation=trial.compensation,
+        seed=lap.seed,
+        compensation=lap.compensation,
         spreads=trial.uncertainty,
         rule=trial.sticking,
-        substeps=substeps,
+        substeps=lap.substeps,
         threads=threads,
-        progress=lambda _, done, total: progress(f"members of run {run.name}", done, total),
+        progress=lambda _, done, total: progress(f"members of run {lap.run.name}", done, total),
     )
-
-
-def _replayed(
-    trial: Trial, arm: Arm, plan: Trajectory, run: Run, substeps: int, seed: int, causes: Causes
-) -> tuple[LapTrack, tuple[float, ...]]:
-    moved = replay(
-        arm,
-        plan,
-        compensated=run.compensated,
-        compensation=trial.compensation,
-        substeps=substeps,
-        seed=seed,
-        causes=causes,
-    )
-    lap = track(
-        arm,
-        plan,
-        run=run.name,
-        compensated=run.compensated,
-        source="prediction",
-        lap=1,
-        file=None,
-        time=moved.time,
-        angle=moved.angle,
-        target=plan.joint,
-        arc=plan.arc,
-        speed=moved.speed,
-        torque=moved.torque,
-    )
-    return lap, tuple(float(share) for share in moved.saturated.mean(axis=0))
-
-
-def _counterfactual(trial: Trial, plan: Trajectory, run: Run, substeps: int, seed: int) -> Counterfactual:
-    def lap_without(joint: str, without: Removable) -> LapTrack:
-        arm, causes = trial.arm, Causes()
-        i = arm.chain.index(joint)
-        others = tuple(0.0 if name == joint else 1.0 for name in arm.joints)
-        if without == "cogging":
-            # The map goes, not the torque alone: the firmware's table would else push where nothing pulls.
-            arm = _with_drive(arm, i, replace(arm.drives[i], cog_map=None))
-        elif without == "friction":
-            causes = Causes(friction=others)
-        elif without == "torque limit":
-            arm = _with_drive(arm, i, replace(arm.drives[i], torque_limit=math.inf))
-        else:
-            lower, upper = arm.chain.lower.copy(), arm.chain.upper.copy()
-            lower[i], upper[i] = -math.inf, math.inf
-            arm = replace(arm, chain=replace(arm.chain, lower=lower, upper=upper))
-        return _replayed(trial, arm, plan, run, substeps, seed, causes)[0]
-
-    return lap_without
-
-
-def _with_drive(arm: Arm, joint: int, drive: Drive) -> Arm:
-    return replace(arm, drives=(*arm.drives[:joint], drive, *arm.drives[joint + 1 :]))
 
 
 def _doubts(trial: Trial, runs: list[PredictedRun]) -> list[str]:
@@ -297,4 +236,6 @@ def _doubts(trial: Trial, runs: list[PredictedRun]) -> list[str]:
                 doubts.append(
                     f"run {run.name}: the torque of joint {joint} is at its limit for {100.0 * share:.1f} % of the time"
                 )
+        if run.step.warning:
+            doubts.append(f"run {run.name}: {run.step.warning}")
     return doubts

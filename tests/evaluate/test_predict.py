@@ -114,3 +114,16 @@ def test_without_its_cogging_a_joint_is_not_compensated_either(joint):
     # The joints of this arm are coupled by nothing but their rotors, and these by nothing at all.
     assert np.array_equal(bare, smoothed)
     assert not np.array_equal(found.run("bare").track.angle[:, i], found.run("smoothed").track.angle[:, i])
+
+
+def test_a_step_that_is_too_coarse_is_told_with_its_size_and_what_to_do():
+    # Rotors so light that they swing in their detents 30 times a second, at a servo period of 4 ms.
+    arm = trial().arm
+    drives = tuple(replace(drive, rotor_inertia=5e-5, damping=0.02, encoder_counts=0.0) for drive in arm.drives)
+    light = replace(trial(), arm=replace(arm, drives=drives, servo=Servo("joint_pd", 4e-3)), runs=RUNS[:1])
+    (warning,) = predict(light).warnings
+    assert warning.startswith("run bare: the time step moves the tip by about 0.")
+    assert "--substeps 2" in warning
+    fine = predict(light, substeps=32)
+    assert fine.warnings == ()
+    assert fine.runs[0].step.rms < 0.2 * predict(light).runs[0].step.rms
