@@ -16,7 +16,7 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
 INK = "#22262a"
-QUIET = "#7a828a"
+QUIET = "#596168"
 GRID = "#e3e6e8"
 TARGET = "#8d959c"
 

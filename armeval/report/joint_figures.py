@@ -50,8 +50,8 @@ def joints_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan | None:
 
     return Plan(
         "joints",
-        "Lines: sticking ratio of each joint; above the dotted line at 1 it sticks when moved slowly enough. Bars "
-        "above the lines: rests of all laps, filled before, outlined after compensation.",
+        "Lines: sticking ratio of each joint; above the grey line at 1 it sticks when moved slowly enough. Bars "
+        "above: rests of all laps, filled before, outlined after compensation.",
         draw,
         "Sticking ratio and rests of every joint against path length.",
         data=lambda made: strip_data(made, length),
@@ -146,7 +146,7 @@ def budget_figure(answers: Answers) -> Plan:
 
     def draw(width: float) -> Figure:
         rows = max(len(state.rows()) for state in answers.budget.budgets)
-        made = figure(width, 0.7 + 0.15 * rows * (1 + len(answers.budget.budgets)))
+        made = figure(width, 0.7 + rows * (0.1 + 0.1 * len(answers.budget.budgets)))
         budget_plot(answers.budget, made.subplots())
         return made
 

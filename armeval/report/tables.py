@@ -159,7 +159,8 @@ def routes_table(found: tuple[ShownRun, StickingEvent] | None) -> Table | None:
     _, event = found
     agreeing, able = event.agreement
     rows = tuple((route.name, route.says, route.text) for route in event.routes)
-    note = f"Put down to {event.cause}: {agreeing} of the {able} ways that could tell say so." if able else ""
+    by = "the one way of looking" if able == 1 else f"{agreeing} of the {able} ways of looking"
+    note = f"Put down to {event.cause} by {by} that could tell." if able else "No way of looking could tell."
     return Table("Why it rested there", ("way of looking", "says", "because"), rows, words=3, note=note)
 
 
