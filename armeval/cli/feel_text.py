@@ -17,12 +17,13 @@ _NONE = "-"
 
 
 def feel_text(met: Feel) -> str:
-    """Write the answer: ripple before and after, its lines, what is left and why, the whole force, what can be rendered."""
+    """Write the answer as tables: ripple and its lines, what is left and why, the whole force, what can be rendered."""
     motion = met.motion
     mean_speed = motion.length / motion.duration
+    carries = "carry" if met.bare.force.carries_weight else "do not carry"
     title = (
         f"{met.trial}: what the hand meets ({motion.source}, {length_text(motion.length, 4)} at "
-        f"{length_text(mean_speed)}/s, drives {'carry' if met.bare.force.carries_weight else 'do not carry'} the weight)"
+        f"{length_text(mean_speed)}/s, drives {carries} the weight)"
     )
     parts = [title, _ripple(met), _lines(met)]
     if math.isfinite(met.reduction):
@@ -103,9 +104,18 @@ def _spread(met: Feel) -> str:
     )
 
 
+_ADVICE = {
+    "index error": "find the encoders' index more exactly",
+    "size of the table": "give the table more entries",
+    "noise of the map": "map more turns and average them",
+    "delay and encoder counts": "shorten the delay, or count finer",
+    "torque limit, step and dead time": "raise the limit, or step the torque finer",
+}
+
+
 def _left(met: Feel) -> str:
-    rows = [[part.cause, _newton(part.rms)] for part in met.compensated.left]
-    return text_table(["what is left, if only this were wrong", "rms"], rows)
+    rows = [[part.cause, _newton(part.rms), _ADVICE[part.cause]] for part in met.compensated.left]
+    return text_table(["what is left, if only this were wrong", "rms", "so"], rows)
 
 
 def _forces(met: Feel) -> str:

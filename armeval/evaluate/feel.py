@@ -263,8 +263,8 @@ def _notes(arm: Arm, hand: Hand, motion: HandMotion, states: list[FeelState], ab
         )
     for part in stretches(motion.jolts, motion.arc):
         notes.append(
-            f"the trajectory steps near s = {length_text(float(motion.arc[part.start]), 4)}: inertia and the whole force "
-            "are withheld there"
+            f"the trajectory steps near s = {length_text(float(motion.arc[part.start]), 4)}: inertia and the whole "
+            "force are withheld there"
         )
     if motion.is_still:
         notes.append(
@@ -276,9 +276,10 @@ def _notes(arm: Arm, hand: Hand, motion: HandMotion, states: list[FeelState], ab
     elif hand.thresholds is not None:
         low, high = hand.thresholds.force_range
         if not low <= hand.rendered_force <= high:
+            less = hand.rendered_force < low
             notes.append(
-                f"forces of {low:g} to {high:g} N were studied; for {hand.rendered_force:g} N the threshold is "
-                "extrapolated, and too large a share is noticed below, where the share rises"
+                f"what is noticed was studied for forces of {low:g} to {high:g} N; for {hand.rendered_force:g} N it is "
+                "extrapolated" + (", and lies higher: a larger share is needed at small forces" if less else "")
             )
         weakest = abilities.continuous_force[np.isfinite(abilities.continuous_force)]
         if len(weakest) and hand.rendered_force > weakest.min():

@@ -115,7 +115,7 @@ class FeelState:
         }
 
     def columns(self) -> dict[str, FloatArray]:
-        """Forces sample by sample [N], under names that tell the state and the part."""
+        """Give the forces sample by sample [N], under names that tell the state and the part."""
         force = self.force
         named = {part: force.part(part) for part in PARTS} | {"total": force.total}
         return {
@@ -165,7 +165,9 @@ def feel_state(
         per_second=ripple_spectrum(force, found, "hertz"),
         noticed=tuple(_noticed(hand, line, heaviness) for line in found.lines),
         left=left_by(arm, force, law, seed=seed) if compensated else (),
-        spread=ripple_spread(arm, force, law, spreads=trial.uncertainty, members=members, seed=seed) if compensated else None,
+        spread=ripple_spread(arm, force, law, spreads=trial.uncertainty, members=members, seed=seed)
+        if compensated
+        else None,
     )
 
 
@@ -187,9 +189,7 @@ def _summed_up(force: HandForce, part: str) -> ForcePart:
 def _noticed(hand: Hand, line: RippleLine, apparent_mass: float) -> Noticed:
     if hand.thresholds is None:
         return Noticed(math.nan, math.nan, math.nan, by="none")
-    return noticed(
-        hand.thresholds, line.hertz, rendered_force=hand.rendered_force, apparent_mass=apparent_mass
-    )
+    return noticed(hand.thresholds, line.hertz, rendered_force=hand.rendered_force, apparent_mass=apparent_mass)
 
 
 def _apparent_mass(force: HandForce) -> float:

@@ -29,8 +29,8 @@ from armeval.model.trial import Compensation
 
 Part = Literal["cogging", "friction", "inertia", "gravity", "command"]
 PARTS: tuple[Part, ...] = ("cogging", "friction", "inertia", "gravity", "command")
-"""Cogging that compensation leaves; dry and viscous friction; mass and rotors; weight that the drives do not carry; what
-torque limit, torque step and dead time take from the command."""
+"""Cogging that compensation leaves; dry and viscous friction; mass and rotors; weight that the drives do not carry;
+what torque limit, torque step and dead time take from the command."""
 
 
 @dataclass(frozen=True, eq=False)

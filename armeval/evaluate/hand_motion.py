@@ -119,23 +119,25 @@ def planned_motion(arm: Arm, trajectory: Trajectory, *, bandwidth: float = math.
     usual = float(np.quantile(np.linalg.norm(speed, axis=1), 0.95))
     change = np.linalg.norm(np.diff(speed, axis=0), axis=1)
     jolts = np.concatenate([[False], change > _JOLT * max(usual, _STILL), [False]])
-    return _motion(arm, trajectory.time, trajectory.joint, "planned", bandwidth, jolts, np.array(trajectory.arc))
+    return _motion(arm, trajectory.time, trajectory.joint, "planned", bandwidth, jolts, trajectory.arc)
 
 
 def logged_motion(arm: Arm, log: JointLog, *, name: str, bandwidth: float) -> HandMotion:
-    """Take the motion from logged joint angles, with their counts and jumps smoothed away.
+    """Take the motion from logged joint angles, with their counts smoothed away; of a log with gaps the longest stretch.
 
     Raises
     ------
     InputError
         If the log is too short to be smoothed.
     """
+    whole = max(log.segments, key=lambda part: part.stop - part.start)
+    logged, angle = log.time[whole] - log.time[whole][0], log.angle[whole]
     period = max(arm.servo.period, 0.25 * log.period)
-    count = round(float(log.time[-1] - log.time[0]) / period) + 1
+    count = int(float(logged[-1]) / period + 1e-9) + 1
     if count < 8:
         raise InputError(f"the log holds {count} samples", "log a longer motion", file=log.source)
-    time = period * np.arange(count)
-    joint = np.column_stack([np.interp(time, log.time - log.time[0], column) for column in log.angle.T])
+    time: FloatArray = np.arange(count, dtype=np.float64) * period
+    joint = np.column_stack([np.interp(time, logged, column) for column in angle.T])
     return _motion(arm, time, joint, f"run {name}, lap {log.lap}", bandwidth, np.zeros(count, dtype=np.bool_), None)
 
 
@@ -177,7 +179,9 @@ def _low_pass(columns: FloatArray, step: float, bandwidth: float) -> FloatArray:
     if bandwidth >= 0.4 / step:
         return columns
     sections = butter(4, bandwidth, fs=1.0 / step, output="sos")
-    return np.asarray(sosfiltfilt(sections, columns, axis=0, padlen=min(len(columns) - 1, round(3.0 / bandwidth / step))))
+    return np.asarray(
+        sosfiltfilt(sections, columns, axis=0, padlen=min(len(columns) - 1, round(3.0 / bandwidth / step)))
+    )
 
 
 def _near(marked: BoolArray, reach: int) -> BoolArray:
@@ -253,7 +257,7 @@ def with_inner_motion(
 
 
 def _between(points: FloatArray, parts: int) -> FloatArray:
-    """Points (k, 3) with so many steps from each to the next, by a cubic spline."""
+    """Give points (k, 3) with so many steps from each to the next, by a cubic spline."""
     from scipy.interpolate import CubicSpline
 
     number = np.arange((len(points) - 1) * parts + 1) / parts
@@ -261,7 +265,7 @@ def _between(points: FloatArray, parts: int) -> FloatArray:
 
 
 def _cells(table: FloatArray) -> FloatArray:
-    """A table for the kernel, shape (2, cells + 2): torque, and slope times the cells' width; the first two again."""
+    """Give a table as the kernel takes it, (2, cells + 2): torque, slope times a cell's width; the first two again."""
     cells = 4 * COG_CELLS
     at = 2.0 * np.pi * np.arange(cells) / cells
     nodes = np.stack([periodic_values(table, at), periodic_slopes(table, at) * (2.0 * np.pi / cells)])

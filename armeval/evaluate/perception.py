@@ -52,8 +52,8 @@ def noticed(thresholds: Thresholds, frequency: float, *, rendered_force: float |
     """
     choices = []
     if rendered_force is not None and frequency <= thresholds.highest_force_frequency:
-        shares = (thresholds.force_share, thresholds.force_share_low, thresholds.force_share_high)
-        choices.append(Noticed(*(share * rendered_force for share in shares), by="force"))
+        low, high = thresholds.force_share_low * rendered_force, thresholds.force_share_high * rendered_force
+        choices.append(Noticed(thresholds.force_share * rendered_force, low, high, by="force"))
     displacement = thresholds.vibration(frequency) if math.isfinite(frequency) else math.inf
     if math.isfinite(displacement):
         force = (apparent_mass + thresholds.hand_mass) * (2.0 * math.pi * frequency) ** 2 * displacement

@@ -1,8 +1,8 @@
 """The rattle that cogging puts on the hand: how large, where, and from which joint and order.
 
-A motor's cogging of order N turns N times a motor turn, so along the path it comes N |d theta / ds| / 2 pi times a metre
-and in time N |d theta / dt| / 2 pi times a second, theta being the motor's angle. Both change along the path, so a line
-of the map becomes a band of the force; what joint and order it is, is not guessed from the spectrum but known.
+A motor's cogging of order N comes N times a motor turn, so along the path N |d theta / ds| / 2 pi times a metre and in
+time N |d theta / dt| / 2 pi times a second, theta being the motor's angle. Both change along the path, so a line of the
+map becomes a band of the force; what joint and order it is, is not guessed from the spectrum but known.
 """
 
 from __future__ import annotations
@@ -101,9 +101,7 @@ class Ripple:
             "worst_at_m": self.worst_at,
             "worst_direction": list(self.worst_direction),
             "rest_rms_N": self.rest_rms,
-            "joints": [
-                {"joint": joint, "share": share} for joint, share in zip(self.joints, self.share, strict=True)
-            ],
+            "joints": [{"joint": joint, "share": share} for joint, share in zip(self.joints, self.share, strict=True)],
         }
 
 
@@ -115,9 +113,7 @@ def rms_over_way(force: FloatArray, weights: FloatArray) -> float:
     return float(np.sqrt((square[known] * weights[known]).sum() / total)) if total > 0.0 else float("nan")
 
 
-def ripple(
-    arm: Arm, force: HandForce, *, compensation: Compensation | None = None, seed: int = 0
-) -> Ripple:
+def ripple(arm: Arm, force: HandForce, *, compensation: Compensation | None = None, seed: int = 0) -> Ripple:
     """Sum up the cogging part of the force on the hand, and name its lines.
 
     Parameters
@@ -174,14 +170,14 @@ def ripple_covariance(arm: Arm, torque_to_force: FloatArray, tables: tuple[Float
     -------
     Shape (k, 3, 3) [N^2]; its largest eigenvalue belongs to the worst direction.
     """
-    rms = np.array([abs(d.gear_ratio) * np.sqrt(np.mean(t[:, 0] ** 2)) for d, t in zip(arm.drives, tables, strict=True)])
+    rms = np.array(
+        [abs(d.gear_ratio) * np.sqrt(np.mean(t[:, 0] ** 2)) for d, t in zip(arm.drives, tables, strict=True)]
+    )
     scaled = torque_to_force * rms
     return np.asarray(scaled @ scaled.transpose(0, 2, 1))
 
 
-def _lines(
-    arm: Arm, force: HandForce, tables: tuple[FloatArray, ...], weights: FloatArray
-) -> tuple[RippleLine, ...]:
+def _lines(arm: Arm, force: HandForce, tables: tuple[FloatArray, ...], weights: FloatArray) -> tuple[RippleLine, ...]:
     motion = force.motion
     angle = motor_angles(arm, motion.joint)
     rate = np.abs(motion.joint_speed * arm.gear_ratio) / (2.0 * np.pi)

@@ -18,6 +18,9 @@ from armeval.model.arm import Arm
 from armeval.model.spreads import Spreads
 from armeval.model.trial import Compensation
 
+_SAMPLES = 4000
+"""Samples of the motion that each member is looked at: enough for an RMS over many detents."""
+
 
 @dataclass(frozen=True)
 class LeftBy:
@@ -106,7 +109,8 @@ def ripple_spread(
         How many, and the seed of the draws.
     """
     rng = np.random.default_rng(seed)
-    joint, seen = force.motion.joint, seen_angles(arm, force.motion)
+    some = slice(None, None, max(1, len(force.motion.time) // _SAMPLES))
+    joint, seen = force.motion.joint[some], seen_angles(arm, force.motion)[some]
     gear = arm.gear_ratio
     clean = clean_tables(arm, compensation)
     true_tables = net_cogging(arm)
@@ -119,11 +123,11 @@ def ripple_spread(
             looked_up = gear[i] * seen[:, i] + drawn.table_index[i]
             fed = lookup(drawn.tables[i], looked_up, compensation.interpolation)
             left[:, i] = gear[i] * (drawn.torque_gain[i] * fed - periodic_values(true_tables[i], turned))
-        rms[number] = _rms(force, left)
+        rms[number] = _rms(force, left, some)
     return RippleSpread(np.sort(rms))
 
 
-def _rms(force: HandForce, torque: FloatArray) -> float:
-    """RMS [N] at the tip, over the way, of joint torques (k, n)."""
-    vector = np.einsum("kri,ki->kr", force.directions.torque_to_force, torque)
-    return rms_over_way(vector, np.where(force.directions.singular, 0.0, force.motion.weights))
+def _rms(force: HandForce, torque: FloatArray, some: slice = slice(None)) -> float:
+    """RMS [N] at the tip, over the way, of joint torques (k, n) at some of the samples."""
+    vector = np.einsum("kri,ki->kr", force.directions.torque_to_force[some], torque)
+    return rms_over_way(vector, np.where(force.directions.singular, 0.0, force.motion.weights)[some])

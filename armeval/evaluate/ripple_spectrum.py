@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 from typing import Literal
 
@@ -120,7 +121,7 @@ def _peaks(
     level = np.log(np.maximum(density, 1e-12 * density.max()))
     index, _ = find_peaks(level, prominence=np.log(_PROMINENCE), height=level.max() + np.log(_LEAST_PEAK))
     width = frequency[1] - frequency[0]
-    dips = [0, *(int(a + np.argmin(density[a:b])) for a, b in zip(index[:-1], index[1:], strict=True)), len(density)]
+    dips = [0, *(int(a + np.argmin(density[a:b])) for a, b in itertools.pairwise(index)), len(density)]
     peaks = []
     for number, at in enumerate(index):
         strongest = int(np.argmax([line[at] for line in own]))

@@ -77,10 +77,10 @@ def tip_abilities(
 ) -> TipAbilities:
     """Work out what an arm can render in many poses.
 
-    A static force F at the tip takes the joint torques J^T F, so the forces that bounded torques hold are a polytope; its
-    nearest edge is the force in the worst direction. Coulomb friction holds the arm against such a polytope too: moving
-    the tip along u takes the largest F . u in it, because the joints of a redundant arm share a slow motion so that
-    friction does the least work, and the two are dual linear programs.
+    A static force F at the tip takes the joint torques J^T F, so the forces that bounded torques hold are a polytope;
+    its nearest edge is the force in the worst direction. Coulomb friction holds the arm against such a polytope too:
+    moving the tip along u takes the largest F . u in it, because the joints of a redundant arm share a slow motion so
+    that friction does the least work, and the two are dual linear programs.
 
     Parameters
     ----------
@@ -108,15 +108,17 @@ def tip_abilities(
     friction = np.ascontiguousarray(np.broadcast_to(of("coulomb_friction"), q.shape))
     force, _ = held_forces(held, limit)
     friction_least, friction_most = held_forces(held, friction)
-    mobility = np.linalg.eigvalsh(at.basis.transpose(0, 2, 1) @ at.mobility @ at.basis)
+    mobility: FloatArray = np.asarray(
+        np.linalg.eigvalsh(at.basis.transpose(0, 2, 1) @ at.mobility @ at.basis), dtype=np.float64
+    )
     viscous = of("viscous_friction")
-    damping = np.zeros(len(q))
+    damping: FloatArray = np.zeros(len(q))
     if (viscous > 0.0).all():
         scaled = held.transpose(0, 2, 1) / np.sqrt(viscous)
-        damping = 1.0 / np.linalg.eigvalsh(scaled @ scaled.transpose(0, 2, 1))[:, -1]
+        damping = np.asarray(1.0 / np.linalg.eigvalsh(scaled @ scaled.transpose(0, 2, 1))[:, -1], dtype=np.float64)
     tables = net_cogging(arm, compensated=compensated, compensation=compensation, seed=seed)
     covariance = ripple_covariance(arm, at.torque_to_force, tables)
-    ripple = np.sqrt(np.maximum(np.linalg.eigvalsh(covariance)[:, -1], 0.0))
+    ripple: FloatArray = np.sqrt(np.maximum(np.linalg.eigvalsh(covariance)[:, -1], 0.0)).astype(np.float64)
     step = largest_steps(at.jacobian, arm.resolution)
     floor = np.maximum(friction_most, np.sqrt(2.0) * ripple)
     singular_values = np.sqrt(np.maximum(np.linalg.eigvalsh(held.transpose(0, 2, 1) @ held), 0.0))
@@ -131,8 +133,8 @@ def tip_abilities(
         friction_most=shown(friction_most),
         ripple=shown(ripple),
         dynamic_range=shown(np.divide(force, floor, out=np.full_like(force, np.nan), where=floor > 0.0)),
-        mass_least=shown(1.0 / mobility[:, -1]),
-        mass_most=shown(1.0 / np.maximum(mobility[:, 0], 1e-300)),
+        mass_least=shown(np.reciprocal(mobility[:, -1])),
+        mass_most=shown(np.reciprocal(np.maximum(mobility[:, 0], 1e-300))),
         step=shown(step),
         wall_by_damping=np.where(at.singular, np.nan, stiffest_by_damping(damping, arm.servo.period)),
         wall_by_friction=np.where(at.singular, np.nan, stiffest_by_friction(friction_least, step)),
@@ -152,7 +154,9 @@ def ability_notes(arm: Arm) -> tuple[str, ...]:
             notes.append(f"{which} a `{name}`: {figure}")
 
     every = all(np.isinf(drive.torque_limit) for drive in arm.drives)
-    given = "there is no continuous force and no dynamic range" if every else "the continuous force is that of the others"
+    given = (
+        "there is no continuous force and no dynamic range" if every else "the continuous force is that of the others"
+    )
     lacking("torque_limit", np.inf, given)
     lacking("rotor_inertia", 0.0, "inertia and apparent mass leave the rotor out and are too small")
     lacking("coulomb_friction", 0.0, "back-drive friction and the wall that friction allows are too small, perhaps 0")

@@ -138,7 +138,7 @@ def tip_directions(arm: Arm, q: FloatArray) -> TipDirections:
 
 
 def reached_directions(chain: Chain, q: FloatArray) -> int:
-    """Number of tip directions that the joints reach in poses (k, n), or in others within the joints' ranges."""
+    """Count the tip directions that the joints reach in poses (k, n), or in others within the joints' ranges."""
     n = chain.count
     low = np.where(np.isfinite(chain.lower), chain.lower, -np.pi)
     high = np.where(np.isfinite(chain.upper), chain.upper, np.pi)

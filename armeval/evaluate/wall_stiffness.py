@@ -11,7 +11,9 @@ import numpy.typing as npt
 from armeval.arrays import FloatArray
 
 DAMPING_BOUND = "J. E. Colgate and G. Schenkel 1994 (from memory): K < 2 (b - |B|) / T"
-FRICTION_BOUND = "J. J. Abbott and A. M. Okamura 2005 (abstract read, formula from memory): K <= min(2 b / T, 2 f_c / step)"
+FRICTION_BOUND = (
+    "J. J. Abbott and A. M. Okamura 2005 (abstract read, formula from memory): K <= min(2 b / T, 2 f_c / step)"
+)
 
 
 def least_damping(stiffness: float, period: float, virtual_damping: float = 0.0) -> float:
@@ -41,5 +43,7 @@ def stiffest_by_friction(friction: npt.ArrayLike, step: npt.ArrayLike) -> FloatA
     Trans. Robotics 21(5), 2005 (abstract read, formula from memory). Infinite for an ideal encoder.
     """
     step = np.asarray(step, dtype=np.float64)
-    bound = np.divide(2.0 * np.asarray(friction, dtype=np.float64), step, out=np.full(step.shape, np.inf), where=step > 0)
+    bound = np.divide(
+        2.0 * np.asarray(friction, dtype=np.float64), step, out=np.full(step.shape, np.inf), where=step > 0
+    )
     return np.asarray(bound)

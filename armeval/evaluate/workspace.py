@@ -70,9 +70,7 @@ class WorkspaceMap:
             "points": len(self.tip),
             "compensated": self.compensated,
             "near_singular_share": float(np.isnan(self.abilities.ripple).mean()),
-            "figures": [
-                {"figure": key, **spread_over(getattr(self.abilities, name))} for name, key in FIGURES.items()
-            ],
+            "figures": [{"figure": key, **spread_over(getattr(self.abilities, name))} for name, key in FIGURES.items()],
         }
 
 
@@ -170,7 +168,7 @@ def _samples(arm: Arm) -> tuple[FloatArray, FloatArray]:
 
 
 def _snake(counts: IntArray) -> FloatArray:
-    """Indices (k, 3) of all grid points in an order in which each is a neighbour of the one before."""
+    """Give the indices (k, 3) of all grid points in an order in which each is a neighbour of the one before."""
     x, y, z = (np.arange(count) for count in counts)
     order = np.empty((*counts, 3))
     for i in x:
@@ -190,7 +188,7 @@ def _poses(
     chain, rest = arm.chain.arrays, arm.rest
     joint, left = poses_along(chain, grid, rest, first_pose(chain, grid[0], rest, REACH_TOLERANCE))
     missed = np.flatnonzero(left > REACH_TOLERANCE)
-    distance, nearest = cKDTree(tips).query(grid[missed])
+    distance, nearest = (np.asarray(found) for found in cKDTree(tips).query(grid[missed]))
     for point, sample in zip(missed[distance < spacing], nearest[distance < spacing], strict=True):
         again, again_left = poses_along(chain, grid[point : point + 1], rest, samples[sample])
         if again_left[0] <= REACH_TOLERANCE:

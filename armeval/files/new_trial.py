@@ -43,7 +43,7 @@ index_error = "0.1 deg"            # motor angle, one sigma
 # start = "5 mrad"                 # where the arm rests before the lap, off its first target
 
 # [hand]                           # a hand moves the arm: see `armeval feel`
-# rendered_force = "3 N"           # what the arm is meant to let the hand feel
+# rendered_force = "1 N"           # what the arm is meant to let the hand feel
 # gravity_feedforward = true       # the drives carry the arm's weight; without it: as [servo] says
 # bandwidth = "10 Hz"              # the hand itself moves no faster: the motion is smoothed there
 # run = "bare"                     # its logged joint angles are the motion; without it: the planned path

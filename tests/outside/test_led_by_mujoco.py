@@ -58,9 +58,7 @@ def _both(name: str, compensated: bool, carries_weight: bool) -> tuple[np.ndarra
     trajectory = plan(arm, replace(path, points=path.points[:40]), feed=0.06, acceleration=1.0)
     given = motion = planned_motion(arm, trajectory, bandwidth=10.0)
     if len(arm.joints) > 3:
-        motion = with_inner_motion(
-            arm, given, compensated=compensated, compensation=LAW, carries_weight=carries_weight
-        )
+        motion = with_inner_motion(arm, given, compensated=compensated, compensation=LAW, carries_weight=carries_weight)
     force = hand_force(arm, motion, compensated=compensated, compensation=LAW, carries_weight=carries_weight)
     led = led_plant.lead(
         shipped.urdf_text(name),

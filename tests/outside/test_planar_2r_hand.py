@@ -2,9 +2,9 @@
 
 Two links of 0.2 m at 30 and 60 degrees, worked out by hand from F = J^-T tau: a torque of 0.02 N m at the shoulder is
 (0, 0.115470) N at the tip, at the elbow (-0.1, -0.173205) N, and torques whose squares add up to 0.02^2 are at most
-0.225175 N. Unit links with unit masses at their ends: set-up of Lynch & Park 2017, section 8.1.3. The arm with masses of
-0.3 and 0.2 kg: textbook closed form (Spong; Craig, from memory), agreed by MuJoCo and pinocchio. Isotropy: Salisbury &
-Craig 1982 (from memory).
+0.225175 N. Unit links with unit masses at their ends: set-up of Lynch & Park 2017, section 8.1.3. The arm with masses
+of 0.3 and 0.2 kg: textbook closed form (Spong; Craig, from memory), agreed by MuJoCo and pinocchio. Isotropy: Salisbury
+& Craig 1982 (from memory).
 """
 
 from __future__ import annotations
@@ -38,7 +38,9 @@ def test_no_joint_feels_what_is_across_the_plane():
 
 
 def test_the_worst_direction_is_the_smallest_singular_value_s():
-    tables = tuple(np.column_stack([0.02 * np.sqrt(2.0) * np.sin(84 * a), 0 * a]) for a in [np.arange(4096) * 2 * np.pi / 4096] * 2)
+    tables = tuple(
+        np.column_stack([0.02 * np.sqrt(2.0) * np.sin(84 * a), 0 * a]) for a in [np.arange(4096) * 2 * np.pi / 4096] * 2
+    )
     covariance = ripple_covariance(ARM, tip_directions(ARM, POSE).torque_to_force, tables)[0]
     assert np.sqrt(np.linalg.eigvalsh(covariance)[-1]) == pytest.approx(0.225175, abs=5e-7)
 

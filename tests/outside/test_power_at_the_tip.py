@@ -1,4 +1,4 @@
-"""What a hand puts in comes out: power and work, for arms that pinocchio knows and for motions that end where they began."""
+"""What a hand puts in comes out: power for arms that pinocchio knows, work for motions that end where they began."""
 
 from __future__ import annotations
 
@@ -29,7 +29,9 @@ def test_the_hand_s_force_moves_the_tip_as_the_hand_wants_and_its_power_is_the_j
     rng = np.random.default_rng([joints, seed])
     urdf = random_urdf(rng, joints)
     chain, model = chain_of(urdf), pinocchio_model(urdf)
-    drives = tuple(Drive(name, rotor_inertia=ROTOR, slides=bool(s)) for name, s in zip(chain.joints, chain.prismatic, strict=True))
+    drives = tuple(
+        Drive(name, rotor_inertia=ROTOR, slides=bool(s)) for name, s in zip(chain.joints, chain.prismatic, strict=True)
+    )
     arm = Arm("random", chain, drives, Servo("joint_pd", 1e-3), np.array([0.0, 0.0, -9.80665]))
     poses = np.array([random_pose(rng, chain) for _ in range(20)])
     q, v = poses[np.argmax(tip_directions(arm, poses).lever)], rng.normal(size=joints)

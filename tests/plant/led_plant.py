@@ -48,7 +48,7 @@ def lead(
     carries_weight: bool,
     compensated: bool = False,
 ) -> LedMotion:
-    """Lead the tip along points (k, 3), one a period [s], while the drives carry the weight or not, compensate or not."""
+    """Lead the tip along points (k, 3), one a period [s]; the drives carry the weight or not, compensate or not."""
     frames = '<mujoco><compiler fusestatic="false" discardvisual="true"/></mujoco>'
     spec = mujoco.MjSpec.from_string(re.sub(r"(<robot\b[^>]*>)", rf"\1{frames}", urdf_text, count=1))
     hand = spec.worldbody.add_body(name="leading_hand", mocap=True, pos=points[0])
@@ -69,7 +69,7 @@ def lead(
     model.dof_armature[:] = gear**2 * [drive.rotor_inertia for drive in drives]
     model.dof_damping[:] = [drive.viscous_friction for drive in drives]
     coulomb = np.array([drive.coulomb_friction for drive in drives])
-    static = np.array([drive.coulomb_friction if d is None else d for drive in drives for d in [drive.static_friction]])
+    static = np.array([d.coulomb_friction if d.static_friction is None else d.static_friction for d in drives])
     stribeck = np.array([drive.stribeck_speed for drive in drives])
     body = mujoco.mj_name2id(model, mujoco.mjtObj.mjOBJ_BODY, tip)
     data, still = mujoco.MjData(model), mujoco.MjData(model)
@@ -103,19 +103,20 @@ def sum_of_harmonics(drives: Sequence[PlantDrive], q: FloatArray) -> FloatArray:
     """True cogging torque at the joints in one pose, shape (n,) [N m]."""
     return np.array(
         [
-            d.gear_ratio
-            * sum(a * np.sin(n * (d.gear_ratio * angle + d.index_offset) + p) for n, a, p in d.harmonics)
+            d.gear_ratio * sum(a * np.sin(n * (d.gear_ratio * angle + d.index_offset) + p) for n, a, p in d.harmonics)
             for d, angle in zip(drives, q, strict=True)
         ]
     )
 
 
 def table_torque(drives: Sequence[PlantDrive], q: FloatArray) -> FloatArray:
-    """What the drives' tables hold against, linear between entries, looked up where the firmware takes the index to be."""
+    """What the drives' tables hold, linear between entries, looked up where the firmware takes the index to be."""
     torque = np.zeros(len(q))
     for i, drive in enumerate(drives):
         if drive.table is not None:
             offset = drive.index_offset if drive.table_offset is None else drive.table_offset
             turn = (drive.gear_ratio * q[i] + offset) / (2.0 * np.pi) * len(drive.table)
-            torque[i] = drive.gear_ratio * np.interp(turn % len(drive.table), np.arange(len(drive.table) + 1), np.append(drive.table, drive.table[0]))
+            torque[i] = drive.gear_ratio * np.interp(
+                turn % len(drive.table), np.arange(len(drive.table) + 1), np.append(drive.table, drive.table[0])
+            )
     return torque
