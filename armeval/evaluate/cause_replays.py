@@ -178,8 +178,12 @@ class CauseReplays:
 
     def _input(self, causes: Causes) -> ReplayInput:
         """Prepare replays with the whole arm's causes as given, and all joints' cogging and friction."""
+        arm = self.arm
+        if not causes.servo_lag:
+            # A servo that does not lag carries the weight from the start, not only from when the lap begins.
+            arm = replace(arm, servo=replace(arm.servo, gravity_feedforward=True))
         return replay_input(
-            self.arm,
+            arm,
             self.trajectory,
             [self._as_filed],
             compensated=self.compensated,

@@ -158,6 +158,20 @@ def test_friction_alone_has_the_square_of_the_dead_band():
     assert abs(parts["servo lag"]) < 0.02 * expected
 
 
+def test_a_weight_that_is_not_fed_forward_is_lag_and_sags_by_weight_over_stiffness():
+    # 0.2 kg at half of 0.3 m turn a joint of 3 N m/rad held level; without lag only the sudden start is left.
+    K, weight = 3.0, 0.2 * 9.80665 * 0.15
+    servo = Servo("joint_pd", 1e-3, gravity_feedforward=False)
+    arm = planar_arm((0.3,), (0.0,), servo=servo, stiffness=K, damping=0.1, rotor_inertia=1e-3)
+    chain = replace(arm.chain, mass=np.array([0.2]), center=np.array([[0.15, 0.0, 0.0]]))
+    arm = replace(arm, chain=chain, gravity=np.array([0.0, -9.80665, 0.0]))
+    state = budget(turning(arm, 1.0, 0.0, 0.02)).budgets[0]
+    lag = next(cause for cause in state.causes if cause.cause == "servo lag")
+    assert state.tracking_rms == pytest.approx(2.0 * 0.3 * math.sin(0.5 * weight / K), rel=0.02)
+    assert lag.part.tracking == pytest.approx(state.whole.tracking, rel=1e-4)
+    assert state.left.tracking < 1e-5 * state.whole.tracking
+
+
 def test_an_encoder_alone_leaves_the_joint_at_the_edge_of_a_count():
     # Worked out by hand. A heavily damped joint without friction stands at the edge of the count c in which its target
     # lies, for there its servo pushes it back from either side: error c + r/2 - target. When the target, at speed v,
