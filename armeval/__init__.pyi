@@ -5,6 +5,7 @@ from .errors import Finding, InputError, InputWarning
 from .evaluate.budget import Budget, budget
 from .evaluate.cog_report import CogReport, cog_report
 from .evaluate.compare import Comparison, compare
+from .evaluate.ensemble import Ensemble, ensemble
 from .evaluate.locate import Location, locate
 from .evaluate.locate_trial import locate_trial
 from .evaluate.measure import Measurement, measure
@@ -27,6 +28,7 @@ from .model.arm import Arm
 from .model.cogmap import CogMap
 from .model.joint_log import JointLog
 from .model.planned_path import PlannedPath
+from .model.spreads import Spreads
 from .model.trajectory import Trajectory
 from .model.trial import Compensation, Run, StickingRule, Trial
 from .report import write_report
@@ -39,6 +41,7 @@ __all__ = [
     "CogReport",
     "Comparison",
     "Compensation",
+    "Ensemble",
     "Finding",
     "InputError",
     "InputWarning",
@@ -49,6 +52,7 @@ __all__ = [
     "Prediction",
     "Replay",
     "Run",
+    "Spreads",
     "StickingRatio",
     "StickingRule",
     "Trajectory",
@@ -58,6 +62,7 @@ __all__ = [
     "check",
     "cog_report",
     "compare",
+    "ensemble",
     "locate",
     "locate_trial",
     "measure",
