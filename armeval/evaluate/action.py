@@ -40,7 +40,7 @@ def action(
     region
         Where it sticks.
     tracks, events
-        The laps of its run, and all their events.
+        The laps of its run, and all their rests.
     compensation
         What the firmware's table can do.
     """
@@ -125,7 +125,7 @@ def _most_cogging(cog_map: CogMap | None, gear_ratio: float) -> float:
 
 def _carry(region: Region, tracks: Sequence[LapTrack], events: Sequence[StickingEvent], j: int) -> str:
     """Say above which speed the joint never rested in this run, if it was ever asked to be clearly faster."""
-    fastest_rest = max(event.target_speed for event in events if event.joint == region.joint and event.kind == "rest")
+    fastest_rest = max(event.target_speed for event in events if event.joint == region.joint)
     asked = max(float(np.quantile(np.abs(target_speed(track)[:, j]), 0.99)) for track in tracks)
     if asked < _CLEARLY_FASTER * fastest_rest:
         return ""

@@ -74,6 +74,8 @@ def joints_in_log(arm: Arm, track: LapTrack) -> tuple[JointInLog, ...]:
     told = target_speed(track)[::stride]
     period = float(np.median(np.diff(time)))
     torque = servo_torque(arm, period, angle, target, told)
+    if arm.servo.inertia_feedforward:
+        torque = torque + _inertia_torque(arm, angle, np.gradient(told, time, axis=0))
     inertia, stiffness = inertia_along(arm, angle), joint_stiffness_along(arm, angle)
     return tuple(
         _joint(track, j, drive, time, angle, target, told, torque, inertia, stiffness)
@@ -174,12 +176,24 @@ def _damping_along(arm: Arm, angle: FloatArray) -> FloatArray:
 
 def inertia_along(arm: Arm, angle: FloatArray) -> FloatArray:
     """Inertia of each joint with the others held, rotors included, along a lap: shape (k, n) [kg m^2]."""
+    at, M = _mass_matrices(arm, angle)
+    return np.maximum(_between(at, np.einsum("pjj->pj", M), len(angle)), 1e-9)
+
+
+def _inertia_torque(arm: Arm, angle: FloatArray, acceleration: FloatArray) -> FloatArray:
+    """Torque M(q) times acceleration along a lap, shape (k, n) [N m]."""
+    at, M = _mass_matrices(arm, angle)
+    rows = [_between(at, M[:, j, :], len(angle)) for j in range(angle.shape[1])]
+    return np.stack([np.einsum("kj,kj->k", row, acceleration) for row in rows], axis=1)
+
+
+def _mass_matrices(arm: Arm, angle: FloatArray) -> tuple[IntArray, FloatArray]:
+    """Mass matrices with rotors in some poses of a lap: which samples, and shape (p, n, n) [kg m^2]."""
     from armeval.kernels.dynamics import mass_matrix_and_bias
 
     at, poses = _some_poses(angle)
     M, _, _ = mass_matrix_and_bias(arm.chain.arrays, np.array(arm.gravity), poses, np.zeros_like(poses))
-    rotor = np.array([drive.gear_ratio**2 * drive.rotor_inertia for drive in arm.drives])
-    return np.maximum(_between(at, np.einsum("pjj->pj", M) + rotor, len(angle)), 1e-9)
+    return at, M + np.diag([drive.gear_ratio**2 * drive.rotor_inertia for drive in arm.drives])
 
 
 def _some_poses(angle: FloatArray) -> tuple[IntArray, FloatArray]:

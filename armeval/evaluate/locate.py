@@ -33,7 +33,9 @@ class RunSticking:
     laps
         How many laps were looked at.
     events
-        Every rest and every jump without a rest, lap by lap in order of time.
+        Every rest, lap by lap in order of time.
+    jumps
+        Every sudden motion without a rest before it (a skipped cog).
     regions
         Where rests recur, the most harmful first.
     """
@@ -43,6 +45,7 @@ class RunSticking:
     source: Literal["log", "prediction"]
     laps: int
     events: tuple[StickingEvent, ...]
+    jumps: tuple[StickingEvent, ...]
     regions: tuple[Region, ...]
 
     def to_document(self) -> dict[str, JsonValue]:
@@ -53,6 +56,7 @@ class RunSticking:
             "source": self.source,
             "of_laps": self.laps,
             "events": [event.to_document() for event in self.events],
+            "jumps": [event.to_document() for event in self.jumps],
             "regions": [region.to_document() for region in self.regions],
         }
 
@@ -99,13 +103,13 @@ class Location:
     warnings: tuple[str, ...] = ()
 
     def to_frame(self) -> pd.DataFrame:
-        """One row an event, in SI units with the unit in the column's name."""
+        """One row a rest or jump, in SI units with the unit in the column's name."""
         import pandas as pd
 
         rows = [
             {"run": run.name, "compensated": run.compensated, "source": run.source, **_flat(event.to_document())}
             for run in self.runs
-            for event in run.events
+            for event in (*run.events, *run.jumps)
         ]
         return pd.DataFrame(rows)
 
@@ -217,13 +221,15 @@ def locate(
     for laps in laps_by_run:
         first = laps[0]
         counterfactual = (counterfactuals or {}).get(first.run) if first.source == "prediction" else None
-        events = [event for track in laps for event in sticking_events(arm, track, rule)]
-        events = find_causes(arm, laps, events, rule=rule, compensation=compensation, counterfactual=counterfactual)
+        found = [event for track in laps for event in sticking_events(arm, track, rule)]
+        found = find_causes(arm, laps, found, rule=rule, compensation=compensation, counterfactual=counterfactual)
+        rests = tuple(event for event in found if event.kind == "rest")
         merged = tuple(
-            replace(region, action=action(arm, region, laps, events, compensation=compensation))
-            for region in regions(laps, events)
+            replace(region, action=action(arm, region, laps, rests, compensation=compensation))
+            for region in regions(laps, rests)
         )
-        runs.append(RunSticking(first.run, first.compensated, first.source, len(laps), tuple(events), merged))
+        jumps = tuple(event for event in found if event.kind == "jump")
+        runs.append(RunSticking(first.run, first.compensated, first.source, len(laps), rests, jumps, merged))
     return Location(tuple(runs), _matchings(runs), trial, tuple(warnings))
 
 

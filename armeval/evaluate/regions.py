@@ -130,16 +130,15 @@ def regions(tracks: Sequence[LapTrack], events: Sequence[StickingEvent]) -> tupl
     tracks
         All laps of the run.
     events
-        Their events, with causes; jumps without a rest form no region.
+        Their rests, with causes.
 
     Returns
     -------
     The regions, the most harmful first.
     """
-    rests = [event for event in events if event.kind == "rest"]
     found: list[Region] = []
-    for joint in dict.fromkeys(event.joint for event in rests):
-        same = [event for event in rests if event.joint == joint]
+    for joint in dict.fromkeys(event.joint for event in events):
+        same = [event for event in events if event.joint == joint]
         found.extend(_region(tracks, group) for group in same_places(same))
     return tuple(sorted(found, key=lambda region: -region.harm))
 

@@ -8,6 +8,7 @@ so many simulated joints follow each stretch of still counts under the torque th
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from functools import cache
 
@@ -29,7 +30,7 @@ _HOPELESS = 0.01  # probability of rest below which the few decide
 _LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.060, 0.010  # s of the log before and after the still counts that are looked at
 _EDGE = 0.080  # s: further inside a long stretch of still counts, every fifth sample will do
 _DWELL_SHARE = 0.8  # a rest counts from this share of the least dwell: its ends are uncertain by a few milliseconds
-_PEAK, _FLANK = 0.5, 0.4  # probability that a rest must reach, and where it begins and ends
+_PEAK, _FLANK = 0.5, 0.45  # probability that a rest must reach, and where it begins and ends
 _TOLERANCE = 0.2  # counts by which a simulated joint may miss a reading of an encoder without jitter, one sigma
 _NO_JITTER = 0.05  # counts, one sigma: less is none
 _ODD_READINGS = 1e-4  # share of readings that may be anything
@@ -60,8 +61,10 @@ def rests_in_counts(joint: JointInLog, rule: StickingRule) -> Iterator[Rest]:
         if peak < _PEAK or dwell < _DWELL_SHARE * rule.least_dwell - 1e-9 or moved < LEAST_COUNTS:
             continue
         within = slice(first, stop)
-        start_error = _flank_spread(probability[:stop][::-1], stop - 1 - first, period)
-        end_error = _flank_spread(probability[first:], stop - 1 - first, period)
+        # Whatever moves less than half a count hides in it.
+        hidden = 0.5 * joint.count / float(np.mean(np.abs(joint.told[first : last + 1])))
+        start_error = math.hypot(hidden, _flank_spread(probability[:stop][::-1], stop - 1 - first, period))
+        end_error = math.hypot(hidden, _flank_spread(probability[first:], stop - 1 - first, period))
         weight = probability[within] / probability[within].sum()
         mean = float(weight @ angle[within])
         scatter = float(np.sqrt(weight @ (angle_spread[within] ** 2 + (angle[within] - mean) ** 2)))
@@ -229,6 +232,7 @@ def _prior(joint: JointInLog, start: int, hold: IntArray, jitter: float) -> Rest
         speed=speed,
         speed_spread=0.5 * abs(speed) + joint.count / span,
         acceleration_spread=max(told, abs(speed)) * float(np.sqrt(stiffness / inertia)),
+        kick=float(joint.torque[start] - np.mean(joint.torque[before : after + 1])),
         inertia=inertia,
         inertia_spread=0.15,
         friction_spread=0.25,

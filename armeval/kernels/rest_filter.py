@@ -38,6 +38,9 @@ class RestPrior(NamedTuple):
         Whether the joint may rest at the start; half of the particles do then.
     acceleration_spread
         Spread of the acceleration at the start [rad/s^2].
+    kick
+        By how much the servo's torque stands above its mean [N m] at the very start: a change of the count, which lets
+        the differenced angle leap, kicks the joint for a moment.
     inertia, inertia_spread, friction_spread
         Inertia [kg m^2] and the relative spreads of it and of friction (logarithmic).
     coulomb, static, stribeck_speed
@@ -54,6 +57,7 @@ class RestPrior(NamedTuple):
     speed_spread: float
     may_rest: bool
     acceleration_spread: float
+    kick: float
     inertia: float
     inertia_spread: float
     friction_spread: float
@@ -148,6 +152,7 @@ def rest_probability(
         else:
             push = row[_INERTIA] * prior.acceleration_spread * first[p, 4]
             row[_W] = push + row[_COULOMB] * np.sign(row[_V])
+        row[_W] += prior.kick
         row[_SINCE] = -1.0
         row[_RESTS:] = 0.0
     steps = samples.shape[0]

@@ -8,8 +8,8 @@ percent.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import cache
 
 import numpy as np
 import numpy.typing as npt
@@ -19,13 +19,16 @@ from armeval.evaluate.lap_track import LapTrack
 from armeval.model.arm import Arm
 from armeval.model.cogmap import CogMap
 from armeval.model.drive import Drive
+from armeval.model.trajectory import Trajectory
 from tests.plant import shipped
 from tests.plant.mujoco_plant import Plant, PlantDrive, PlantLap, PlantServo
+from tests.plant.planner import Plan, plan
 from tests.plant.truth import TrueRest, rests
 
 FloatArray = npt.NDArray[np.float64]
 
 PERIOD = 1e-3
+LENGTH = 0.4  # m of path
 
 
 @dataclass(frozen=True, eq=False)
@@ -36,17 +39,21 @@ class StickingLap:
     ----------
     arm
         What the package is told of the arm.
-    target, target_speed
-        Shape (k, n) [rad], [rad/s].
+    target, target_speed, arc
+        Shape (k, n) [rad], [rad/s], and (k,) [m] along the path.
     lap
         What the plant recorded.
+    planned
+        The plan that it followed.
     """
 
     arm: Arm
     drives: tuple[PlantDrive, ...]
     target: FloatArray
     target_speed: FloatArray
+    arc: FloatArray
     lap: PlantLap
+    planned: Plan
 
     @property
     def angle(self) -> FloatArray:
@@ -70,6 +77,37 @@ class StickingLap:
         lengths = np.flatnonzero(edges == -1) - np.flatnonzero(edges == 1)
         return len(lengths) > 0 and bool(lengths.max() * PERIOD >= 0.015 - 1e-9)
 
+    @property
+    def true_arm(self) -> Arm:
+        """The arm as it truly is, for a replay with the plant's own parameters."""
+        angle = 2.0 * math.pi * np.arange(4096) / 4096
+        drives = tuple(
+            replace(
+                given,
+                cog_map=CogMap(sum(a * np.sin(n * angle + phase) for n, a, phase in true.harmonics)),
+                coulomb_friction=true.coulomb_friction,
+                static_friction=true.static_friction,
+            )
+            for given, true in zip(self.arm.drives, self.drives, strict=True)
+        )
+        return replace(self.arm, drives=drives)
+
+    @property
+    def trajectory(self) -> Trajectory:
+        """The plan as the package takes it."""
+        steps = np.concatenate([[True], np.diff(self.planned.arc) > 0.0])
+        return Trajectory(
+            time=self.planned.time - self.planned.time[0],
+            arc=self.planned.arc,
+            tip=self.planned.tip,
+            joint=self.planned.angle,
+            joint_speed=self.planned.speed,
+            joint_acceleration=self.planned.acceleration,
+            path=self.planned.tip[steps],
+            path_arc=self.planned.arc[steps],
+            corners=np.array([0.0, self.planned.arc[-1]]),
+        )
+
     def track(self, every: int = 1, lap: int = 1) -> LapTrack:
         """The lap as the package measures it, logged every so many servo periods."""
         from armeval.kernels.chain import tip_positions
@@ -78,8 +116,6 @@ class StickingLap:
         angle, target = np.ascontiguousarray(self.angle[rows]), np.ascontiguousarray(self.target[rows])
         chain = self.arm.chain.arrays
         tip, target_tip = tip_positions(chain, angle), tip_positions(chain, target)
-        step = np.diff(target_tip, axis=0)
-        arc = np.concatenate([[0.0], np.cumsum(np.linalg.norm(step, axis=1))])
         along = np.gradient(target_tip, axis=0)
         along /= np.maximum(np.linalg.norm(along, axis=1), 1e-12)[:, None]
         return LapTrack(
@@ -89,7 +125,7 @@ class StickingLap:
             lap=lap,
             file=None,
             time=self.lap.time[rows],
-            arc=arc,
+            arc=self.arc[rows],
             angle=angle,
             target=target,
             tip=tip,
@@ -100,9 +136,7 @@ class StickingLap:
         )
 
 
-def sticking_lap(
-    seed: int, counts: int, *, jitter: float = 0.0, duration: float = 8.0, cogging: float = 1.0
-) -> StickingLap:
+def sticking_lap(seed: int, counts: int, *, jitter: float = 0.0, cogging: float = 1.0) -> StickingLap:
     """Draw an arm and a motion and let the plant move it; ``cogging`` scales the true cogging torque."""
     rng = np.random.default_rng(seed)
     shape = armeval.read_arm(shipped.FOLDER / "tern" / "arm.toml")
@@ -114,12 +148,13 @@ def sticking_lap(
     cutoff, delay = rng.uniform(80.0, 200.0), float(rng.choice([0.0, PERIOD]))
     servo = replace(shape.servo, period=PERIOD, delay=delay, speed_cutoff=cutoff)
     arm = Arm(shape.name, shape.chain, tuple(given), servo, shape.gravity)
-    plant = Plant(
-        shipped.urdf_text("tern"), "stylus_tip", true, PlantServo(period=PERIOD, delay=delay, speed_cutoff=cutoff)
+    firmware = PlantServo(
+        period=PERIOD, delay=delay, speed_cutoff=cutoff, inertia_feedforward=servo.inertia_feedforward
     )
-    target, speed = _motion(arm.rest, duration, rng)
-    (lap,) = plant.run(target, speed, seed=seed)
-    return StickingLap(arm, tuple(true), target, speed, lap)
+    plant = Plant(shipped.urdf_text("tern"), "stylus_tip", true, firmware)
+    planned = _planned(seed, tuple(arm.rest))
+    (lap,) = plant.run(planned.angle, planned.speed, planned.acceleration, seed=seed)
+    return StickingLap(arm, tuple(true), planned.angle, planned.speed, planned.arc, lap, planned)
 
 
 def _drive(
@@ -162,20 +197,20 @@ def _drive(
     return given, true
 
 
-def _motion(rest: Sequence[float], duration: float, rng: np.random.Generator) -> tuple[FloatArray, FloatArray]:
-    """Joint targets like those of straight stretches: slow and fast, with stops and turns, near a pose."""
-    k, n = round(duration / PERIOD), len(rest)
-    speed = np.zeros((k, n))
-    at, place = round(0.1 / PERIOD), np.zeros(n)
-    while at < k:
-        lasts = rng.uniform(0.4, 1.5)
-        rows = np.arange(at, min(at + round(lasts / PERIOD), k))
-        t = (rows - at) * PERIOD
-        ramp = np.clip(np.minimum(t, lasts - t) / 0.06, 0.0, 1.0)
-        top = np.exp(rng.uniform(math.log(0.02), math.log(0.5), n)) * np.where(rng.random(n) < 0.5, -1.0, 1.0)
-        top = np.where(np.abs(place + top * lasts) > 0.5, -top, top)
-        end = top * rng.uniform(0.3, 1.5, n)
-        speed[rows] = ramp[:, None] * (top + (end - top) * (t / lasts)[:, None])
-        place = place + speed[rows].sum(axis=0) * PERIOD
-        at += round(lasts / PERIOD) + (round(rng.uniform(0.0, 0.15) / PERIOD) if rng.random() < 0.3 else 0)
-    return np.asarray(rest) + np.cumsum(speed, axis=0) * PERIOD, speed
+@cache
+def _planned(seed: int, rest: tuple[float, ...]) -> Plan:
+    """Plan a path of straight stretches over the table before the arm, at the feed of a hand that is led."""
+    rng = np.random.default_rng([seed, 1])
+    low, high = np.array([0.18, -0.12]), np.array([0.30, 0.12])
+    points = [rng.uniform(low, high)]
+    length = 0.0
+    while length < LENGTH:
+        way = rng.uniform(0.0, 2.0 * math.pi)
+        there = np.clip(points[-1] + rng.uniform(0.02, 0.08) * np.array([math.cos(way), math.sin(way)]), low, high)
+        leg = float(np.linalg.norm(there - points[-1]))
+        if leg > 0.015:
+            points.append(there)
+            length += leg
+    corners = np.column_stack([points, np.full(len(points), 0.03)])
+    plant = shipped.plant("tern")
+    return plan(plant, corners, np.array(rest), feed=rng.uniform(0.03, 0.10), acceleration=rng.uniform(0.4, 1.0))
