@@ -15,13 +15,13 @@ from armeval.arrays import FloatArray
 from armeval.kernels.chain import ChainArrays
 from armeval.kernels.compile import jit, jit_inline
 from armeval.kernels.elementary import sine_cosine
-from armeval.kernels.records import Records, joint_records
+from armeval.kernels.records import Records, joint_count, joint_records
 
 
 @jit_inline
 def place(joints: Records) -> None:
     """Place the joints' frames, ``rotation`` and ``origin``, and their ``axis`` for the joint angles ``at``."""
-    for i in range(joints.shape[0]):
+    for i in range(joint_count(joints)):
         joint = joints[i]
         at, S, R, p, P = joint["at"], joint["axis"], joint["rotation"], joint["origin"], joint["placement"]
         if i == 0:
@@ -57,14 +57,14 @@ def hold_weight(joints: Records, free_fall: FloatArray) -> None:
     """Fill in ``weight``, the joint torques that hold the arm still, for the frames of :func:`place`."""
     gx, gy, gz = free_fall[0], free_fall[1], free_fall[2]
     carried = 0.0
-    for i in range(joints.shape[0] - 1, -1, -1):
+    for i in range(joint_count(joints) - 1, -1, -1):
         joint = joints[i]
         R, p, S, C = joint["rotation"], joint["origin"], joint["axis"], joint["first_moment"]
         mass, center = joint["mass"], joint["center"]
         carried += mass
         for r in range(3):
             C[r] = mass * (p[r] + R[r, 0] * center[0] + R[r, 1] * center[1] + R[r, 2] * center[2])
-        if i < joints.shape[0] - 1:
+        if i < joint_count(joints) - 1:
             D = joints[i + 1]["first_moment"]
             for r in range(3):
                 C[r] += D[r]
@@ -80,7 +80,7 @@ def hold_weight(joints: Records, free_fall: FloatArray) -> None:
 @jit_inline
 def equations_of_motion(joints: Records, free_fall: FloatArray) -> None:
     """Fill in ``matrix``, a row of M, and ``bias``, h, of every joint, for the frames of :func:`place`."""
-    n = joints.shape[0]
+    n = joint_count(joints)
     for i in range(n):
         _move(joints, i, free_fall)
         _weigh(joints[i])
@@ -187,7 +187,7 @@ def evaluate_poses(
     joints: Records, free_fall: FloatArray, q: FloatArray, v: FloatArray, M: FloatArray, h: FloatArray, g: FloatArray
 ) -> None:
     """Fill in M (k, n, n), h (k, n) and the gravity torque g (k, n) for poses q and speeds v (k, n); one lane."""
-    n = joints.shape[0]
+    n = joint_count(joints)
     for s in range(q.shape[0]):
         for i in range(n):
             joints[i]["at"] = q[s, i]

@@ -27,7 +27,7 @@ from __future__ import annotations
 
 from armeval.kernels.compile import jit_inline
 from armeval.kernels.lanes import anywhere, where
-from armeval.kernels.records import Records
+from armeval.kernels.records import Records, joint_count
 
 MOST_PASSES = 100_000
 """After so many passes the solve is given up; only a value that is not a number gets there."""
@@ -58,7 +58,7 @@ def solve_speeds(joints: Records) -> int:
 @jit_inline
 def _solve_guess(joints: Records) -> None:
     """Solve for the speeds that the guessed states leave open, by L D L^T with the known ones masked out."""
-    n = joints.shape[0]
+    n = joint_count(joints)
     stopped = False
     for i in range(n):
         joint = joints[i]
@@ -100,7 +100,7 @@ def _solve_guess(joints: Records) -> None:
 @jit_inline
 def _guess_holds(joints: Records) -> bool:
     """Whether every joint stays on its tread; in each lane, move the first one that does not one state along."""
-    n = joints.shape[0]
+    n = joint_count(joints)
     untouched = abs(joints[0]["state"]) <= 2.0
     for i in range(n):
         joint = joints[i]

@@ -15,6 +15,7 @@ import numpy.typing as npt
 
 from armeval.arrays import FloatArray
 from armeval.kernels.chain import ChainArrays
+from armeval.kernels.compile import jit_inline
 from armeval.kernels.lanes import MARK, WIDTH, aligned_zeros
 
 Records = npt.NDArray[np.void]
@@ -128,6 +129,13 @@ def joint_records(chain: ChainArrays, lanes: int = 1) -> Records:
     joints["torque_gain"] = 1.0
     joints["cog_gain"] = 1.0
     return joints
+
+
+@jit_inline
+def joint_count(joints: Records) -> int:
+    """Give the number of joints from the records' type: to the compiler a constant, by which it unrolls loops."""
+    count: int = joints[0]["matrix"].shape[0]
+    return count
 
 
 def servo_record() -> Records:

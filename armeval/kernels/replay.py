@@ -14,7 +14,7 @@ from armeval.kernels.dynamics import equations_of_motion, place
 from armeval.kernels.elementary import decay
 from armeval.kernels.friction import LARGEST, solve_speeds
 from armeval.kernels.lanes import take, where, with_lanes
-from armeval.kernels.records import Records
+from armeval.kernels.records import Records, joint_count
 from armeval.kernels.servo import cell_of, run_servo
 
 
@@ -38,7 +38,7 @@ def cog_torque(joint: Records, cogging: FloatArray, i: int) -> float:
 @jit_inline
 def step_arm(joints: Records, cogging: FloatArray, free_fall: FloatArray, step: float, share: float) -> int:
     """Move the arm by one step, in which ``acts_after`` acts for ``share`` of the time and ``acts_before`` else."""
-    n = joints.shape[0]
+    n = joint_count(joints)
     half = 0.5 * step
     for i in range(n):
         joints[i]["at"] = joints[i]["angle"] + half * joints[i]["speed"]
@@ -108,7 +108,7 @@ def replay_lap(
         run_servo(joints, servo, targets[period], tables, sent, period)
         if period >= settling:
             row = lap[period - settling]
-            for i in range(joints.shape[0]):
+            for i in range(joint_count(joints)):
                 joint = joints[i]
                 row["angle"][i] = joint["angle"]
                 row["speed"][i] = joint["speed"]

@@ -17,13 +17,13 @@ from armeval.arrays import FloatArray
 from armeval.kernels.compile import jit_inline
 from armeval.kernels.dynamics import hold_weight, place
 from armeval.kernels.lanes import take_own, where
-from armeval.kernels.records import Records
+from armeval.kernels.records import Records, joint_count
 
 
 @jit_inline
 def read_encoders(joints: Records, servo: Records, first: bool) -> None:
     """Fill in ``seen`` and ``seen_speed``; the first reading gives no speed."""
-    for i in range(joints.shape[0]):
+    for i in range(joint_count(joints)):
         joint = joints[i]
         resolution, speed = joint["resolution"], joint["seen_speed"]
         reading = joint["angle"]
@@ -37,7 +37,7 @@ def read_encoders(joints: Records, servo: Records, first: bool) -> None:
 @jit_inline
 def add_tip_law(joints: Records, servo: Records, target: Records) -> None:
     """Add J^T [K (target - seen) + D (target speed - seen speed)] to ``asked``, for the frames of the seen angles."""
-    n = joints.shape[0]
+    n = joint_count(joints)
     K, D, offset = servo["tip_stiffness"], servo["tip_damping"], servo["tip"]
     wanted, wanted_speed = target["tip"], target["tip_speed"]
     R, p = joints[n - 1]["rotation"], joints[n - 1]["origin"]
@@ -69,7 +69,7 @@ def add_compensation(joints: Records, servo: Records, tables: FloatArray) -> Non
     again; it is looked up at the motor angle that the firmware works out of the seen joint angle.
     """
     nearest = servo["takes_nearest"] != 0.0
-    for i in range(joints.shape[0]):
+    for i in range(joint_count(joints)):
         joint = joints[i]
         gear = joint["gear_ratio"]
         below, part = cell_of(gear * joint["seen"] + joint["table_index"], tables.shape[2] - 2)
@@ -97,7 +97,7 @@ def send_torques(joints: Records, sent: Records, period: int) -> None:
     period the arm was held by the first torque.
     """
     waits = sent.shape[0]
-    for i in range(joints.shape[0]):
+    for i in range(joint_count(joints)):
         joint = joints[i]
         asked, limit, step = joint["asked"], joint["torque_limit"], joint["torque_step"]
         joint["cut"] = where(abs(asked) > limit, 1.0, 0.0)
@@ -123,12 +123,12 @@ def run_servo(joints: Records, servo: Records, target: Records, tables: FloatArr
     at_tip, holds = servo["closes_at_tip"] != 0.0, servo["holds_weight"] != 0.0
     read_encoders(joints, servo, period == 0)
     if at_tip or holds:
-        for i in range(joints.shape[0]):
+        for i in range(joint_count(joints)):
             joints[i]["at"] = joints[i]["seen"]
         place(joints)
     if holds:
         hold_weight(joints, servo["free_fall"])
-    for i in range(joints.shape[0]):
+    for i in range(joint_count(joints)):
         joint = joints[i]
         asked = target["torque"][i] + joint["weight"]
         if not at_tip:

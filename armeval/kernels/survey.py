@@ -6,7 +6,7 @@ from armeval.arrays import IntArray
 from armeval.kernels.compile import jit
 from armeval.kernels.dynamics import place
 from armeval.kernels.lanes import where, with_lanes
-from armeval.kernels.records import Records
+from armeval.kernels.records import Records, joint_count
 
 
 @jit
@@ -37,7 +37,7 @@ def survey_laps(
         joint sticks, are filled in.
     """
     joints, lap, bins = with_lanes(joint_records), with_lanes(lap_records), with_lanes(bin_records)
-    n, last = joints.shape[0], lap.shape[0] - 1
+    n, last = joint_count(joints), lap.shape[0] - 1
     offset = servo_records[0]["tip"]
     for k in range(last + 1):
         row, target = lap[k], targets[k]
