@@ -6,6 +6,7 @@ from .evaluate.budget import Budget, budget
 from .evaluate.cog_report import CogReport, cog_report
 from .evaluate.compare import Comparison, compare
 from .evaluate.ensemble import Ensemble, ensemble
+from .evaluate.feel import Feel, feel
 from .evaluate.locate import Location, locate
 from .evaluate.locate_trial import locate_trial
 from .evaluate.measure import Measurement, measure
@@ -14,6 +15,7 @@ from .evaluate.predict import Prediction, predict
 from .evaluate.quasistatic import quasistatic
 from .evaluate.replay import Replay, replay
 from .evaluate.sticking_ratio import StickingRatio, sticking_ratio
+from .evaluate.workspace import WorkspaceMap, workspace_map
 from .files.arm_file import read_arm
 from .files.arm_writer import write_arm
 from .files.check import CheckResult, check
@@ -22,13 +24,16 @@ from .files.demo import write_demo
 from .files.log_file import read_joint_log, write_joint_log
 from .files.new_trial import new_trial, robot_folder, robot_names
 from .files.path_file import read_path, write_path
+from .files.thresholds_file import read_thresholds
 from .files.trial_file import read_trial
 from .files.trial_writer import write_trial
 from .model.arm import Arm
 from .model.cogmap import CogMap
+from .model.hand import Hand
 from .model.joint_log import JointLog
 from .model.planned_path import PlannedPath
 from .model.spreads import Spreads
+from .model.thresholds import Thresholds
 from .model.trajectory import Trajectory
 from .model.trial import Compensation, Run, StickingRule, Trial
 from .report import write_report
@@ -42,7 +47,9 @@ __all__ = [
     "Comparison",
     "Compensation",
     "Ensemble",
+    "Feel",
     "Finding",
+    "Hand",
     "InputError",
     "InputWarning",
     "JointLog",
@@ -55,14 +62,17 @@ __all__ = [
     "Spreads",
     "StickingRatio",
     "StickingRule",
+    "Thresholds",
     "Trajectory",
     "Trial",
+    "WorkspaceMap",
     "__version__",
     "budget",
     "check",
     "cog_report",
     "compare",
     "ensemble",
+    "feel",
     "locate",
     "locate_trial",
     "measure",
@@ -75,11 +85,13 @@ __all__ = [
     "read_cog_map",
     "read_joint_log",
     "read_path",
+    "read_thresholds",
     "read_trial",
     "replay",
     "robot_folder",
     "robot_names",
     "sticking_ratio",
+    "workspace_map",
     "write_arm",
     "write_cog_map",
     "write_demo",
