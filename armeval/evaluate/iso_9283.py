@@ -123,11 +123,13 @@ def path_criteria(tracks: Sequence[LapTrack], trajectory: Trajectory, *, planes:
     laid = lay_planes(trajectory, planes)
     crossings, attained, asked = [], [], []
     for track in tracks:
-        point, when = plane_crossings(track, laid)
-        crossings.append(point)
+        crossings.append(plane_crossings(track, laid)[0])
+        # Speeds are taken when the target passes the planes, in even steps of time: taken where the tip passes them, a
+        # tip that rests and slips would seem faster than it is, for it covers most of its way while it slips.
+        when = np.interp(laid.at, track.arc, track.time)
         attained.append(_speeds(track.time, track.tip, when, laid.direction))
-        asked.append(_speeds(track.time, track.target_tip, np.interp(laid.at, track.arc, track.time), laid.direction))
-    reached = np.isfinite(attained).all(axis=0)
+        asked.append(_speeds(track.time, track.target_tip, when, laid.direction))
+    reached = np.isfinite(crossings).all(axis=(0, 2))
     accuracy, repeatability = accuracy_and_repeatability(np.array(crossings)[:, reached], laid.point[reached])
     commanded = np.mean(asked, axis=0)
     speed = float(commanded.max())
@@ -217,7 +219,7 @@ def _largest(values: FloatArray) -> float:
 
 
 def _speeds(time: FloatArray, tip: FloatArray, when: FloatArray, direction: FloatArray) -> FloatArray:
-    """Speed (m,) [m/s] of a tip along given directions (m, 3) at some instants; NaN where there is no instant.
+    """Speed (m,) [m/s] of a tip along given directions (m, 3) at some instants.
 
     It is taken over 50 ms: the toggling of one encoder count is no speed.
     """

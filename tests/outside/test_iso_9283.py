@@ -120,3 +120,16 @@ def test_a_single_lap_has_no_repeatability():
     found = path_criteria([lap_of(trajectory, trajectory.tip)], trajectory)
     assert np.isnan([found.repeatability, found.velocity_repeatability]).all()
     assert np.isnan([found.corner_rounding, found.corner_overshoot]).all()
+
+
+def test_a_tip_that_rests_and_slips_is_not_fast_for_it():
+    """It covers its way in slips at five times the feed and takes as long as its target: its mean speed is the feed."""
+    trajectory = along([[0.0, 0.0, 0.0], [0.4, 0.0, 0.0]], feed=0.1)
+    step = 0.01
+    within = np.mod(trajectory.arc, step)
+    slipping = step * np.clip((within / step - 0.8) / 0.2, 0.0, 1.0)
+    tip = np.array(trajectory.tip)
+    tip[:, 0] = trajectory.arc - within + slipping
+    found = path_criteria([lap_of(trajectory, tip)], trajectory, planes=400)
+    assert abs(found.velocity_accuracy) < 0.03
+    assert found.velocity_fluctuation > 0.3
