@@ -5,7 +5,6 @@ Random arms with random drives follow random targets; the same truth is given to
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -52,10 +51,10 @@ class Case:
         return lap
 
     def replayed(self, compensated: bool, substeps: int) -> Replay:
+        table = Compensation(table_bins=BINS, map_noise=0.0)
         return replay(
-            self.arm, self.trajectory, compensated=compensated, compensation=Compensation(table_bins=BINS, map_noise=0.0),
-            substeps=substeps, settle=0.2,
-        )  # fmt: skip
+            self.arm, self.trajectory, compensated=compensated, compensation=table, substeps=substeps, settle=0.2
+        )
 
     def tip_error(self, angle: np.ndarray) -> np.ndarray:
         return np.linalg.norm(tip_positions(self.arm.chain.arrays, angle) - self.trajectory.tip, axis=1)
