@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import logging
 from pathlib import Path
 
 from armeval.errors import InputError
@@ -29,6 +30,8 @@ def write_pdf(page: str, file: Path) -> None:
     """Lay the HTML page out on A4 and write it; nothing is fetched from anywhere."""
     from weasyprint import HTML
 
+    # It does not know that properties of drawings are none of a page's, and would tell the reader of each.
+    logging.getLogger("weasyprint").setLevel(logging.ERROR)
     HTML(string=page, url_fetcher=_refuse).write_pdf(file)
 
 
