@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Iterable
 from typing import TYPE_CHECKING
 
 from armeval.cli.text_table import text_table
@@ -34,33 +35,37 @@ def feel_text(met: Feel) -> str:
     return "\n\n".join(part for part in parts if part)
 
 
-def _newton(value: float, digits: int = 3) -> str:
-    return f"{significant(value, digits)} N" if math.isfinite(value) else _NONE
+def _millinewton(value: float, digits: int = 3) -> str:
+    return f"{significant(1e3 * value, digits)} mN" if math.isfinite(value) else _NONE
 
 
 def _number(value: float, unit: str = "", digits: int = 2) -> str:
     return f"{significant(value, digits)}{' ' if unit else ''}{unit}" if math.isfinite(value) else _NONE
 
 
+def _shares(shares: Iterable[tuple[str, float]]) -> str:
+    told = list(shares)
+    if not any(share for _, share in told):
+        return _NONE
+    return ", ".join(f"{joint} {100.0 * share:.0f} %" for joint, share in told)
+
+
 def _ripple(met: Feel) -> str:
     rows = []
     for state in met.states:
         found = state.ripple
-        shares = ", ".join(
-            f"{joint} {100.0 * share:.0f} %" for joint, share in zip(found.joints, found.share, strict=True)
-        )
         direction = "(" + ", ".join(f"{value:+.2f}" for value in found.worst_direction) + ")"
         rows.append(
             [
                 state.name,
-                _newton(found.rms),
-                _newton(found.along_rms),
-                _newton(found.across_rms),
-                _newton(found.peak_to_peak),
-                _newton(found.worst),
+                _millinewton(found.rms),
+                _millinewton(found.along_rms),
+                _millinewton(found.across_rms),
+                _millinewton(found.peak_to_peak),
+                _millinewton(found.worst),
                 length_text(found.worst_at, 4),
                 direction,
-                shares,
+                _shares(zip(found.joints, found.share, strict=True)),
             ]
         )
     head = ["ripple", "rms", "along", "across", "peak to peak", "largest", "at s", "direction x, y, z", "from"]
@@ -84,8 +89,8 @@ def _line(state: FeelState, number: int) -> list[str]:
         state.name,
         line.joint,
         f"{line.order}",
-        _newton(line.rms),
-        _newton(line.along_rms),
+        _millinewton(line.rms),
+        _millinewton(line.along_rms),
         _number(line.per_metre, "/m", 3),
         _number(line.hertz, "Hz", 3),
         ratio,
@@ -99,8 +104,8 @@ def _spread(met: Feel) -> str:
         return ""
     low, high = spread.interval
     return (
-        f"from one start to the next, with rotor index, map noise and torque constant anew, it leaves "
-        f"{_newton(spread.median)} ({_newton(low)} to {_newton(high)} in 95 % of {len(spread.rms)} members)"
+        "from one start to the next, with rotor index, map noise and torque constant anew, it leaves "
+        f"{_millinewton(spread.median)}, {_millinewton(low)} to {_millinewton(high)} in 95 % of {len(spread.rms)} members"
     )
 
 
@@ -114,7 +119,7 @@ _ADVICE = {
 
 
 def _left(met: Feel) -> str:
-    rows = [[part.cause, _newton(part.rms), _ADVICE[part.cause]] for part in met.compensated.left]
+    rows = [[part.cause, _millinewton(part.rms), _ADVICE[part.cause]] for part in met.compensated.left]
     return text_table(["what is left, if only this were wrong", "rms", "so"], rows)
 
 
@@ -123,15 +128,16 @@ def _forces(met: Feel) -> str:
         [
             state.name,
             part.part,
-            _newton(part.along_rms),
-            _newton(part.across_rms),
-            _newton(part.max),
+            _millinewton(part.along_rms),
+            _millinewton(part.across_rms),
+            _millinewton(part.max),
             length_text(part.max_at, 4) if math.isfinite(part.max_at) else _NONE,
+            _shares(part.shares.items()),
         ]
         for state in met.states
         for part in state.parts
     ]
-    return text_table(["force", "part", "along rms", "across rms", "largest", "at s"], rows)
+    return text_table(["force", "part", "along rms", "across rms", "largest", "at s", "from"], rows)
 
 
 _ABILITIES = (

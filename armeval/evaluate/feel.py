@@ -11,28 +11,22 @@ import numpy as np
 from armeval.arrays import BoolArray, FloatArray
 from armeval.errors import InputError
 from armeval.evaluate.document import JsonValue, as_text, document
+from armeval.evaluate.feel_notes import CAUTION, feel_notes
 from armeval.evaluate.feel_state import FeelState, feel_state
 from armeval.evaluate.hand_motion import HandMotion, logged_motion, planned_motion
-from armeval.evaluate.perception import GUIDANCE
 from armeval.evaluate.plan import plan_trial
 from armeval.evaluate.reach import stretches
-from armeval.evaluate.tip_abilities import TipAbilities, ability_notes, tip_abilities
+from armeval.evaluate.tip_abilities import TipAbilities, tip_abilities
 from armeval.evaluate.wall_stiffness import DAMPING_BOUND, FRICTION_BOUND
 from armeval.evaluate.workspace import FIGURES, WorkspaceMap, spread_over, workspace_map
-from armeval.model.arm import Arm
 from armeval.model.hand import Hand
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Trial
 from armeval.progress import Progress, silent
-from armeval.units import length_text
 
 if TYPE_CHECKING:
     import pandas as pd
 
-CAUTION = (
-    "this is no safety assessment: forces on people are judged by the machine's own risk assessment and the applicable "
-    "standards, and no limit is given here"
-)
 _POSES_ALONG = 400
 
 
@@ -224,7 +218,7 @@ def feel(
         arc=motion.arc[some],
         abilities=abilities,
         workspace=mapped,
-        warnings=(*map(str, trial.findings), *_notes(trial.arm, hand, motion, states, abilities), CAUTION),
+        warnings=(*map(str, trial.findings), *feel_notes(trial, hand, motion, states, abilities), CAUTION),
     )
 
 
@@ -241,52 +235,3 @@ def _motion(trial: Trial, hand: Hand, trajectory: Trajectory | None) -> HandMoti
             place="[hand] run",
         )
     return logged_motion(trial.arm, run.laps[0], name=run.name, bandwidth=hand.bandwidth)
-
-
-def _notes(arm: Arm, hand: Hand, motion: HandMotion, states: list[FeelState], abilities: TipAbilities) -> list[str]:
-    """Say which figures cannot be had, and why, and what the others rest on."""
-    notes, directions = list(ability_notes(arm)), states[0].force.directions
-    if directions.count < 3:
-        blind = directions.blind
-        which = "" if blind is None else f" along {tuple(round(float(value), 3) for value in blind)}"
-        notes.append(
-            f"the tip moves in {directions.count} directions only: across them{which} the structure carries the force, "
-            "and there is no figure"
-        )
-    if arm.chain.count > directions.count:
-        how = "as logged" if motion.source != "planned" else "as the equations of motion have it, with friction"
-        notes.append(f"the arm is redundant: its inner motion is free and taken {how}")
-    for part in stretches(directions.singular, motion.arc):
-        notes.append(
-            f"the arm is near a singular pose from s = {length_text(float(motion.arc[part.start]), 4)} to "
-            f"{length_text(float(motion.arc[part.stop - 1]), 4)}: no figure is given there, and none of the spectrum"
-        )
-    for part in stretches(motion.jolts, motion.arc):
-        notes.append(
-            f"the trajectory steps near s = {length_text(float(motion.arc[part.start]), 4)}: inertia and the whole "
-            "force are withheld there"
-        )
-    if motion.is_still:
-        notes.append(
-            "the hand does not move the tip: there is no direction along the motion, no spectrum, and friction is "
-            "anything up to its bound"
-        )
-    if hand.rendered_force is None:
-        notes.append("no `rendered_force` in [hand]: slow ripple is not judged by what a hand notices")
-    elif hand.thresholds is not None:
-        low, high = hand.thresholds.force_range
-        if not low <= hand.rendered_force <= high:
-            less = hand.rendered_force < low
-            notes.append(
-                f"what is noticed was studied for forces of {low:g} to {high:g} N; for {hand.rendered_force:g} N it is "
-                "extrapolated" + (", and lies higher: a larger share is needed at small forces" if less else "")
-            )
-        weakest = abilities.continuous_force[np.isfinite(abilities.continuous_force)]
-        if len(weakest) and hand.rendered_force > weakest.min():
-            notes.append(
-                f"the arm cannot render {hand.rendered_force:g} N in every direction: its torque limits hold "
-                f"{weakest.min():.3g} N in the worst one"
-            )
-    if hand.thresholds is not None:
-        notes.append(GUIDANCE)
-    return notes

@@ -3,16 +3,18 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.evaluate.document import JsonValue
-from armeval.evaluate.hand_force import PARTS, HandForce, hand_force
-from armeval.evaluate.hand_motion import HandMotion, with_inner_motion
+from armeval.evaluate.hand_force import PARTS, HandForce, Part, hand_force
+from armeval.evaluate.hand_motion import HandMotion
+from armeval.evaluate.inner_motion import with_inner_motion
 from armeval.evaluate.perception import Noticed, noticed
-from armeval.evaluate.ripple import Ripple, RippleLine, ripple, rms_over_way
+from armeval.evaluate.ripple import Ripple, RippleLine, joint_shares, ripple, rms_over_way
 from armeval.evaluate.ripple_left import LeftBy, RippleSpread, left_by, ripple_spread
 from armeval.evaluate.ripple_spectrum import RippleSpectrum, ripple_spectrum
 from armeval.model.hand import Hand
@@ -21,22 +23,38 @@ from armeval.model.trial import Trial
 
 @dataclass(frozen=True)
 class ForcePart:
-    """One kind of force on the hand, summed up over the way: RMS along and across the motion, largest, where."""
+    """One kind of force on the hand, summed up over the way: RMS along and across the motion, largest, where.
+
+    ``shares`` are the joints' in its mean square, sum 1; a joint that works against the others has a negative one.
+    """
 
     part: str
     along_rms: float
     across_rms: float
     max: float
     max_at: float
+    shares: Mapping[str, float]
 
     def to_row(self) -> dict[str, JsonValue]:
-        """Give the entry of tables and documents."""
+        """Give the row of a table."""
         return {
             "part": self.part,
             "along_rms_N": self.along_rms,
             "across_rms_N": self.across_rms,
             "max_N": self.max,
             "max_at_m": self.max_at,
+            **{f"share_{joint}": share for joint, share in self.shares.items()},
+        }
+
+    def to_document(self) -> dict[str, JsonValue]:
+        """Give the entry of the JSON document."""
+        return {
+            "part": self.part,
+            "along_rms_N": self.along_rms,
+            "across_rms_N": self.across_rms,
+            "max_N": self.max,
+            "max_at_m": self.max_at,
+            "joints": [{"joint": joint, "share": share} for joint, share in self.shares.items()],
         }
 
 
@@ -104,7 +122,7 @@ class FeelState:
         return {
             "name": self.name,
             "compensated": self.force.compensated,
-            "parts": [part.to_row() for part in self.parts],
+            "parts": [part.to_document() for part in self.parts],
             "friction_band_N": float(self.force.band.max()),
             "ripple": self.ripple.to_document(),
             "lines": self.lines_document(),
@@ -159,7 +177,7 @@ def feel_state(
     return FeelState(
         name="compensated" if compensated else "bare",
         force=force,
-        parts=tuple(_summed_up(force, part) for part in (*PARTS, "total")),
+        parts=tuple(_summed_up(arm.joints, force, part) for part in (*PARTS, "total")),
         ripple=found,
         per_metre=ripple_spectrum(force, found, "per_metre"),
         per_second=ripple_spectrum(force, found, "hertz"),
@@ -171,8 +189,10 @@ def feel_state(
     )
 
 
-def _summed_up(force: HandForce, part: str) -> ForcePart:
+def _summed_up(joints: tuple[str, ...], force: HandForce, part: str) -> ForcePart:
     vector = force.total if part == "total" else force.part(part)  # type: ignore[arg-type]
+    kinds: tuple[Part, ...] = PARTS if part == "total" else (part,)  # type: ignore[assignment]
+    by_joint = np.sum([force.forces(kind) for kind in kinds], axis=0)
     weights = force.motion.weights
     size = np.linalg.norm(vector, axis=1)
     known = np.isfinite(size).any()
@@ -183,6 +203,7 @@ def _summed_up(force: HandForce, part: str) -> ForcePart:
         across_rms=rms_over_way(force.across(vector), weights),
         max=float(size[largest]) if known else math.nan,
         max_at=float(force.motion.arc[largest]) if known else math.nan,
+        shares=dict(zip(joints, joint_shares(by_joint, vector, weights), strict=True)),
     )
 
 

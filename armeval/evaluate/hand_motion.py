@@ -3,28 +3,20 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
 from armeval.arrays import BoolArray, FloatArray
 from armeval.errors import InputError
-from armeval.evaluate.net_cogging import net_cogging
-from armeval.evaluate.replay_input import COG_CELLS
 from armeval.kernels.chain import tip_positions
 from armeval.kernels.inverse import reach_of
-from armeval.kernels.periodic import periodic_slopes, periodic_values
-from armeval.kernels.records import joint_records
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from armeval.model.trajectory import Trajectory
-from armeval.model.trial import Compensation
 
 _JOLT = 0.25
 """A change of the tip's speed within one sample by more than this share of the usual speed is a step, not a motion."""
-
-_INNER_RATE = 16e3
-"""Steps a second for the inner motion: where joints catch and let go, a thousand would miss the force by a fifth."""
 
 _STILL = 1e-6
 """A tip slower than this [m/s] has no direction of motion of its own."""
@@ -123,7 +115,7 @@ def planned_motion(arm: Arm, trajectory: Trajectory, *, bandwidth: float = math.
 
 
 def logged_motion(arm: Arm, log: JointLog, *, name: str, bandwidth: float) -> HandMotion:
-    """Take the motion from logged joint angles, with their counts smoothed away; of a log with gaps the longest stretch.
+    """Take the motion from logged joint angles, counts smoothed away; of a log with gaps, the longest stretch.
 
     Raises
     ------
@@ -189,87 +181,6 @@ def _near(marked: BoolArray, reach: int) -> BoolArray:
     count = np.cumsum(np.concatenate([[0], marked]))
     index = np.arange(len(marked))
     return np.asarray(count[np.minimum(index + reach + 1, len(marked))] > count[np.maximum(index - reach, 0)])
-
-
-def with_inner_motion(
-    arm: Arm,
-    motion: HandMotion,
-    *,
-    compensated: bool,
-    compensation: Compensation,
-    carries_weight: bool,
-    seed: int = 0,
-) -> HandMotion:
-    """Replace the joint motion of a redundant arm by the one that its tip's motion and its own mechanics bring about.
-
-    The tip goes as before. The arm starts in the motion's first pose and at its speed; friction, cogging, weight and
-    inertia move what the tip leaves free, and stops at the ends of the joints' ranges halt it.
-
-    Raises
-    ------
-    InputError
-        If the inner motion grows beyond all bounds.
-    """
-    from armeval.kernels.led_tip import led_by_the_tip
-
-    parts = max(1, math.ceil(motion.period * _INNER_RATE - 1e-9))
-    tip = _between(motion.tip, parts)
-    k, n = len(tip), arm.chain.count
-    tables = net_cogging(arm, compensated=compensated, compensation=compensation, seed=seed)
-    joints = joint_records(arm.chain.arrays)
-    for name in ("gear_ratio", "stribeck_speed", "coulomb_friction", "viscous_friction"):
-        joints[name] = [getattr(drive, name) for drive in arm.drives]
-    joints["static_friction"] = [drive.breakaway_friction for drive in arm.drives]
-    joints["reflected_inertia"] = [drive.gear_ratio**2 * drive.rotor_inertia for drive in arm.drives]
-    joints["index"] = [drive.index_offset for drive in arm.drives]
-    joints["lower"], joints["upper"] = arm.chain.lower, arm.chain.upper
-    joints["angle"], joints["speed"] = motion.joint[0], motion.joint_speed[0]
-    angle, speed, friction = np.empty((k, n)), np.empty((k, n)), np.empty((k, n))
-    lost = led_by_the_tip(
-        arm.chain.arrays,
-        joints,
-        np.array(arm.gravity),
-        np.stack([_cells(table) for table in tables]),
-        tip,
-        motion.period / parts,
-        carries_weight,
-        angle,
-        speed,
-        friction,
-    )
-    if lost >= 0:
-        raise InputError(
-            f"the arm's inner motion grows beyond all bounds {motion.time[lost // parts]:.3f} s into the hand's motion",
-            "check masses and friction, or give a joint path",
-        )
-    change = np.empty((k, n))
-    change[:-1] = np.diff(speed, axis=0) * (parts / motion.period)
-    change[-1] = change[-2]
-    shown = slice(None, None, parts)
-    return replace(
-        motion,
-        tip=tip_positions(arm.chain.arrays, np.ascontiguousarray(angle[shown])),
-        joint=np.ascontiguousarray(angle[shown]),
-        joint_speed=speed[shown].copy(),
-        joint_acceleration=change[shown].copy(),
-        dry_friction=friction[shown].copy(),
-    )
-
-
-def _between(points: FloatArray, parts: int) -> FloatArray:
-    """Give points (k, 3) with so many steps from each to the next, by a cubic spline."""
-    from scipy.interpolate import CubicSpline
-
-    number = np.arange((len(points) - 1) * parts + 1) / parts
-    return np.ascontiguousarray(CubicSpline(np.arange(len(points)), points)(number))
-
-
-def _cells(table: FloatArray) -> FloatArray:
-    """Give a table as the kernel takes it, (2, cells + 2): torque, slope times a cell's width; the first two again."""
-    cells = 4 * COG_CELLS
-    at = 2.0 * np.pi * np.arange(cells) / cells
-    nodes = np.stack([periodic_values(table, at), periodic_slopes(table, at) * (2.0 * np.pi / cells)])
-    return np.concatenate([nodes, nodes[:, :2]], axis=1)
 
 
 def rest_speeds(arm: Arm) -> FloatArray:

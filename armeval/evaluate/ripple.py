@@ -113,6 +113,20 @@ def rms_over_way(force: FloatArray, weights: FloatArray) -> float:
     return float(np.sqrt((square[known] * weights[known]).sum() / total)) if total > 0.0 else float("nan")
 
 
+def joint_shares(by_joint: FloatArray, whole: FloatArray, weights: FloatArray) -> tuple[float, ...]:
+    """Give each joint's share in the mean square of a force: the mean of its own force times the whole one, sum 1.
+
+    Parameters
+    ----------
+    by_joint, whole
+        Shape (k, n, 3) and (k, 3) [N]; the first sums up to the second, which is NaN where it cannot be had.
+    weights
+        Shape (k,).
+    """
+    power = np.einsum("kir,kr,k->i", by_joint, np.nan_to_num(whole), weights)
+    return tuple(float(value) for value in (power / power.sum() if power.sum() > 0.0 else np.zeros_like(power)))
+
+
 def ripple(arm: Arm, force: HandForce, *, compensation: Compensation | None = None, seed: int = 0) -> Ripple:
     """Sum up the cogging part of the force on the hand, and name its lines.
 
@@ -127,11 +141,8 @@ def ripple(arm: Arm, force: HandForce, *, compensation: Compensation | None = No
     weights = np.where(directions.singular, 0.0, motion.weights)
     vector = force.part("cogging")
     along = force.along(vector)
-    by_joint = force.forces("cogging")
     square = rms_over_way(vector, weights) ** 2
     filled = np.nan_to_num(vector)
-    power = np.einsum("kir,kr,k->i", by_joint, filled, weights / max(float(weights.sum()), 1e-300))
-    share = power / square if square > 0.0 else np.zeros(arm.chain.count)
     size = np.linalg.norm(filled, axis=1)
     worst = int(np.argmax(size))
     tables = net_cogging(arm, compensated=force.compensated, compensation=compensation, seed=seed)
@@ -140,7 +151,7 @@ def ripple(arm: Arm, force: HandForce, *, compensation: Compensation | None = No
     rest[directions.singular] = np.nan
     return Ripple(
         joints=arm.joints,
-        share=tuple(float(value) for value in share),
+        share=joint_shares(force.forces("cogging"), vector, weights),
         rms=float(np.sqrt(square)),
         along_rms=rms_over_way(along, weights),
         across_rms=rms_over_way(force.across(vector), weights),

@@ -9,7 +9,8 @@ import numpy as np
 import pytest
 
 from armeval.errors import InputError
-from armeval.evaluate.feel import CAUTION, feel
+from armeval.evaluate.feel import feel
+from armeval.evaluate.feel_notes import CAUTION
 from armeval.files.demo import write_demo
 from armeval.files.thresholds_file import read_thresholds
 from armeval.files.trial_file import read_trial

@@ -9,7 +9,8 @@ import pinocchio
 import pytest
 
 from armeval.evaluate.hand_force import PARTS, hand_force
-from armeval.evaluate.hand_motion import planned_motion, with_inner_motion
+from armeval.evaluate.hand_motion import planned_motion
+from armeval.evaluate.inner_motion import with_inner_motion
 from armeval.evaluate.plan import plan
 from armeval.evaluate.tip_directions import tip_directions
 from armeval.model.arm import Arm
