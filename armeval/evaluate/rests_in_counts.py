@@ -25,10 +25,12 @@ from armeval.model.trial import StickingRule
 LEAST_COUNTS = 2.8
 """While it rests, a joint's target must move by this many counts: three, less what rounding takes at both ends."""
 
-_PILOT, _PARTICLES = 512, 2048  # simulated joints: the many follow only where some of the few have rested
+_PILOT, _PARTICLES = 256, 1024  # simulated joints: the many follow only where some of the few have rested
 _HOPELESS = 0.01  # probability of rest below which the few decide
 _LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.060, 0.010  # s of the log before and after the still counts that are looked at
 _EDGE = 0.080  # s: further inside a long stretch of still counts, every fifth sample will do
+_SURE_COUNTS = 15.0  # so far the target moves while the joint's count stays: whatever holds it, it hardly moves
+_SURE = 0.9  # probability that is taken for that
 _DWELL_SHARE = 0.8  # a rest counts from this share of the least dwell: its ends are uncertain by a few milliseconds
 _PEAK, _FLANK = 0.5, 0.45  # probability that a rest must reach, and where it begins and ends
 _TOLERANCE = 0.2  # counts by which a simulated joint may miss a reading of an encoder without jitter, one sigma
@@ -191,9 +193,16 @@ def _rest_probability(joint: JointInLog, rule: StickingRule) -> tuple[FloatArray
                 break
         return samples, found
 
-    for samples, found in spread(weigh, list(still)):
+    for (first, stop), (samples, found) in zip(still, spread(weigh, list(still)), strict=True):
         whole = np.arange(samples[0], samples[-1] + 1)
         filled = [np.interp(whole, samples, row) for row in found]
+        last = min(stop, k - 1)
+        inside = (whole >= first) & (whole < stop)
+        explained = float(np.mean(filled[0][inside] >= _FLANK))
+        if explained < 0.8 and path[last] - path[first] >= _SURE_COUNTS:
+            # Stop, obstacle, or more friction than the arm's files know: the model does not hold, the counts do.
+            filled = [np.where(inside, _SURE, 0.0), np.full(len(whole), float(np.mean(joint.counts[first:stop])))]
+            filled.append(np.full(len(whole), 0.3))
         better = filled[0] > probability[whole]
         for into, values in zip((probability, angle, scatter), filled, strict=True):
             into[whole[better]] = values[better]

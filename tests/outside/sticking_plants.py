@@ -77,6 +77,14 @@ class StickingLap:
         lengths = np.flatnonzero(edges == -1) - np.flatnonzero(edges == 1)
         return len(lengths) > 0 and bool(lengths.max() * PERIOD >= 0.015 - 1e-9)
 
+    def tips(self, row: int, angle: float, joint: int) -> FloatArray:
+        """Where the tip is [m] with one joint at an angle [rad] and the others as they truly were."""
+        from armeval.kernels.chain import tip_positions
+
+        pose = self.lap.true_angle[row : row + 1].copy()
+        pose[0, joint] = angle
+        return tip_positions(self.arm.chain.arrays, pose)[0]
+
     @property
     def true_arm(self) -> Arm:
         """The arm as it truly is, for a replay with the plant's own parameters."""
