@@ -102,10 +102,10 @@ def _spread(met: Feel) -> str:
     spread = met.compensated.spread
     if spread is None:
         return ""
-    low, high = spread.interval
+    low, high = (_millinewton(value) for value in spread.interval)
     return (
         "from one start to the next, with rotor index, map noise and torque constant anew, it leaves "
-        f"{_millinewton(spread.median)}, {_millinewton(low)} to {_millinewton(high)} in 95 % of {len(spread.rms)} members"
+        f"{_millinewton(spread.median)}, {low} to {high} in 95 % of {len(spread.rms)} members"
     )
 
 

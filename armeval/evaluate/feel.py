@@ -18,7 +18,7 @@ from armeval.evaluate.plan import plan_trial
 from armeval.evaluate.reach import stretches
 from armeval.evaluate.tip_abilities import TipAbilities, tip_abilities
 from armeval.evaluate.wall_stiffness import DAMPING_BOUND, FRICTION_BOUND
-from armeval.evaluate.workspace import FIGURES, WorkspaceMap, spread_over, workspace_map
+from armeval.evaluate.workspace import FIGURES, WorkspaceMap, has_grid, spread_over, workspace_map
 from armeval.model.hand import Hand
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Trial
@@ -207,7 +207,12 @@ def feel(
     abilities = tip_abilities(trial.arm, posed, **setting, carries_weight=hand.gravity_feedforward, seed=seed)  # type: ignore[arg-type]
     progress("feeling", 3, parts)
     mapped = None
-    if workspace:
+    notes = feel_notes(trial, hand, motion, states, abilities)
+    if workspace and not has_grid(states[0].force.directions):
+        notes.append(
+            "there are no maps of the workspace: the tip moves in a surface that no grid along the base axes fills"
+        )
+    elif workspace:
         mapped = workspace_map(trial.arm, spacing=spacing, carries_weight=hand.gravity_feedforward, **setting)  # type: ignore[arg-type]
         progress("feeling", parts, parts)
     return Feel(
@@ -218,7 +223,7 @@ def feel(
         arc=motion.arc[some],
         abilities=abilities,
         workspace=mapped,
-        warnings=(*map(str, trial.findings), *feel_notes(trial, hand, motion, states, abilities), CAUTION),
+        warnings=(*map(str, trial.findings), *notes, CAUTION),
     )
 
 

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
+from armeval.arrays import BoolArray, FloatArray
 from armeval.evaluate.feel_state import FeelState
 from armeval.evaluate.hand_motion import HandMotion
 from armeval.evaluate.perception import GUIDANCE
@@ -19,6 +20,10 @@ CAUTION = (
     "this is no safety assessment: forces on people are judged by the machine's own risk assessment and the applicable "
     "standards, and no limit is given here"
 )
+_MOST_PLACES = 3
+
+_TOLD = 1e-4
+"""Smoothing that moves the tip by less [m] is not worth a word."""
 
 
 def feel_notes(
@@ -40,15 +45,16 @@ def feel_notes(
     if trial.arm.chain.count > directions.count:
         how = "as logged" if motion.source != "planned" else "as the equations of motion have it, with friction"
         notes.append(f"the arm is redundant: its inner motion is free and taken {how}")
-    for part in stretches(directions.singular, motion.arc):
+    if directions.singular.any():
+        where = _places(directions.singular, motion.arc)
+        notes.append(f"the arm is near a singular pose {where}: no figure is given there, and no spectrum at all")
+    if motion.jolts.any():
+        where = _places(motion.jolts, motion.arc)
+        notes.append(f"the trajectory steps {where}: inertia and the whole force are withheld there")
+    if motion.moved > _TOLD:
         notes.append(
-            f"the arm is near a singular pose from s = {length_text(float(motion.arc[part.start]), 4)} to "
-            f"{length_text(float(motion.arc[part.stop - 1]), 4)}: no figure is given there, and none of the spectrum"
-        )
-    for part in stretches(motion.jolts, motion.arc):
-        notes.append(
-            f"the trajectory steps near s = {length_text(float(motion.arc[part.start]), 4)}: inertia and the whole "
-            "force are withheld there"
+            f"smoothing the motion at {motion.bandwidth:g} Hz, faster than which no hand moves, moved the tip by up to "
+            f"{length_text(motion.moved)}"
         )
     if motion.is_still:
         notes.append(
@@ -74,3 +80,10 @@ def feel_notes(
     if hand.thresholds is not None:
         notes.append(GUIDANCE)
     return notes
+
+
+def _places(marked: BoolArray, arc: FloatArray) -> str:
+    """Say where along the path samples are marked: the first stretches, and how many more there are."""
+    found = [(float(arc[part.start]), float(arc[part.stop - 1])) for part in stretches(marked, arc)]
+    told = ", ".join(f"from s = {length_text(a, 4)} to {length_text(b, 4)}" for a, b in found[:_MOST_PLACES])
+    return told if len(found) <= _MOST_PLACES else f"{told} and in {len(found) - _MOST_PLACES} more places"

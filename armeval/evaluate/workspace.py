@@ -13,7 +13,7 @@ from armeval.errors import InputError
 from armeval.evaluate.document import JsonValue
 from armeval.evaluate.reach import REACH_TOLERANCE
 from armeval.evaluate.tip_abilities import TipAbilities, tip_abilities
-from armeval.evaluate.tip_directions import reached_directions
+from armeval.evaluate.tip_directions import TipDirections
 from armeval.kernels.chain import tip_positions
 from armeval.kernels.inverse import first_pose, poses_along
 from armeval.model.arm import Arm
@@ -99,6 +99,12 @@ def spread_over(values: FloatArray) -> dict[str, float]:
     return {"least": float(known.min()), "median": float(np.median(known)), "most": float(known.max())}
 
 
+def has_grid(directions: TipDirections) -> bool:
+    """Whether a grid along the base axes can fill what the tip reaches: all of space, or a plane across a base axis."""
+    blind = directions.blind
+    return directions.count == 3 or (blind is not None and bool(np.abs(blind).max() > 1.0 - 1e-9))
+
+
 def workspace_map(
     arm: Arm,
     *,
@@ -112,8 +118,7 @@ def workspace_map(
     Parameters
     ----------
     arm
-        The arm, n joints. Where its tip moves in a surface that is not a plane of the base frame, the grid's points lie
-        near it at best; give such an arm a path instead.
+        The arm, n joints; its tip moves in space, or in a plane across a base axis (see :func:`has_grid`).
     spacing
         Of the grid [m]; None: some 20,000 points.
     compensated, compensation, carries_weight
@@ -124,7 +129,6 @@ def workspace_map(
     InputError
         If no point of the grid is reached, or the grid would have millions of points.
     """
-    chain = arm.chain
     samples, tips = _samples(arm)
     low, high = tips.min(axis=0), tips.max(axis=0)
     span = np.where(high - low > _FLAT, high - low, 0.0)
@@ -138,8 +142,7 @@ def workspace_map(
     joint, reached = _poses(arm, grid, spacing, samples, tips)
     if not reached.any():
         raise InputError(
-            f"the arm reaches no point of a grid of {spacing:g} m"
-            + (" (its tip moves in a curved surface)" if reached_directions(chain, joint[:1]) < 3 else ""),
+            f"the arm reaches no point of a grid of {spacing:g} m",
             "give a closer spacing",
             place="--spacing",
         )

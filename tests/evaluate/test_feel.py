@@ -14,11 +14,15 @@ from armeval.evaluate.feel_notes import CAUTION
 from armeval.files.demo import write_demo
 from armeval.files.thresholds_file import read_thresholds
 from armeval.files.trial_file import read_trial
+from armeval.model.arm import Arm
+from armeval.model.drive import Drive
 from armeval.model.hand import Hand
 from armeval.model.joint_log import JointLog
 from armeval.model.planned_path import PlannedPath
+from armeval.model.servo import Servo
 from armeval.model.trial import Compensation, Run, Trial
 from tests.planar_arms import harmonic_map, planar_arm
+from tests.random_arms import chain_of, random_urdf
 
 DRIVE = {
     "rotor_inertia": 1e-4,
@@ -235,3 +239,25 @@ def test_the_demo_says_what_another_engine_measured_on_the_hand(demo):
 
 def test_the_demo_s_motion_is_the_logged_one(demo):
     assert feel(demo, members=8).motion.source == "run led, lap 1"
+
+
+def test_an_arm_whose_tip_moves_in_a_curved_surface_has_no_map_and_all_else():
+    rng = np.random.default_rng(3)
+    chain = chain_of(random_urdf(rng, 2, prismatic=0.0))
+    drives = tuple(Drive(joint, **DRIVE) for joint in chain.joints)
+    arm = Arm("two", chain, drives, Servo("joint_pd", 1e-3), np.zeros(3))
+    path = PlannedPath(np.array([[0.3, 0.4], [0.9, 1.0]]), space="joint")
+    trial = trial_of(path=path)
+    found = feel(replace(trial, arm=arm), members=8, workspace=True)
+    assert found.workspace is None
+    assert "no maps of the workspace" in notes(found)
+    assert found.bare.force.directions.count == 2
+    assert found.to_document()["motion"]["without_figure"] is None
+    assert found.bare.ripple.rms > 0.0
+
+
+def test_steps_without_end_are_told_in_one_line():
+    zigzag = np.column_stack([0.25 + 0.02 * (np.arange(60) % 2), 0.003 * np.arange(60) - 0.08, np.zeros(60)])
+    found = feel(trial_of(path=PlannedPath(zigzag, time=0.1 * np.arange(60.0))), members=8)
+    assert sum("steps" in warning for warning in found.warnings) == 1
+    assert "smoothing" in notes(found)
