@@ -183,7 +183,10 @@ def _targets(arm: Arm, trajectory: Trajectory, causes: Causes, settling: int) ->
             fed += bias - weight + v * [d.viscous_friction for d in arm.drives]
             if not arm.servo.gravity_feedforward:
                 fed += weight
-    targets = target_records(q, v, fed, np.array(trajectory.tip), np.einsum("kri,ki->kr", tip_jacobians(chain, q), v))
+    tip = np.array(trajectory.tip)
+    at_tip = arm.servo.law == "tip_impedance"
+    tip_speed = np.einsum("kri,ki->kr", tip_jacobians(chain, q), v) if at_tip else np.zeros_like(tip)
+    targets = target_records(q, v, fed, tip, tip_speed)
     still = np.repeat(targets[:1], settling)
     for name in ("joint_speed", "torque", "tip_speed"):
         still[name] = 0.0

@@ -1,9 +1,16 @@
-"""The step loop: firmware, drives and arm from servo period to servo period.
+"""The step loop: firmware, drives and arm from servo period to servo period, for one member or for eight.
 
 Once a period the servo reads the encoders and works out torques (:mod:`armeval.kernels.servo`), which act after its
-delay. Between, the arm moves in ``substeps`` of length d by Moreau's midpoint scheme (Moreau 1988; Studer, Leine &
-Glocker 2008): half a step at the old speed, new speeds from the torques there with dry friction as a bounded impulse
-(:mod:`armeval.kernels.friction`), half a step at the new speed. Viscous friction acts at the new speed.
+delay. Between, the arm moves in ``substeps`` by Moreau's midpoint scheme (Moreau 1988; Studer, Leine & Glocker 2008):
+half a step at the old speed, new speeds from the torques there with dry friction as a bounded impulse
+(:mod:`armeval.kernels.friction`), half a step at the new speed. Where a delay ends within a step, the torques before
+and after act in it by their shares of its time, so the impulse is exact. Viscous friction acts at the new speed;
+Stribeck's curve is taken at the old one. A joint stop is reached by no more than the way left to it.
+
+There is one description of all this. Compiled for plain numbers it is the single replay, compiled for numbers with
+lanes (:mod:`armeval.kernels.lanes`) the ensemble: no second copy to keep in step, no generated code to read. The price
+is :func:`armeval.kernels.lanes.where` in the place of a branch on a member's own numbers, and machine code of its own
+for each number of joints.
 """
 
 from __future__ import annotations
