@@ -95,7 +95,9 @@ def figure(width: float, height: float) -> Figure:
     return made
 
 
-def strip_figure(width: float, heights: Sequence[float], *, above: float = 0.08) -> tuple[Figure, list[Axes]]:
+def strip_figure(
+    width: float, heights: Sequence[float], *, above: float = 0.08, between: float = 0.16
+) -> tuple[Figure, list[Axes]]:
     """Give a figure of strips over one axis, in the same places whatever is drawn on them.
 
     Parameters
@@ -104,13 +106,13 @@ def strip_figure(width: float, heights: Sequence[float], *, above: float = 0.08)
         Of the figure [inches].
     heights
         Of the strips [inches], the uppermost first.
-    above
-        Space above the first strip [inches].
+    above, between
+        Space above the first strip and between strips [inches].
     """
     from matplotlib.backends.backend_agg import FigureCanvasAgg
     from matplotlib.figure import Figure
 
-    left, right, below, between = 0.92, 0.12, 0.46, 0.16
+    left, right, below = 0.92, 0.12, 0.46
     height = above + sum(heights) + between * (len(heights) - 1) + below
     made = Figure(figsize=(width, height))
     FigureCanvasAgg(made)

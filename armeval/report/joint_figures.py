@@ -117,8 +117,7 @@ def orders_figure(answers: Answers, found: Mapping[str, list[tuple[ShownRun, Err
     drives = {drive.joint: drive for drive in answers.trial.arm.drives}
 
     def draw(width: float) -> Figure:
-        made = figure(width, 1.5 * len(found) + 0.5)
-        axes = made.subplots(len(found), 1, sharex=True, squeeze=False)[:, 0]
+        made, axes = strip_figure(width, [1.1] * len(found), above=0.36, between=0.26)
         for (joint, entries), ax in zip(found.items(), axes, strict=True):
             slides = bool(chain.prismatic[chain.index(joint)])
             fundamental = expected_orders(drives[joint].slots, drives[joint].poles).fundamental
@@ -129,7 +128,7 @@ def orders_figure(answers: Answers, found: Mapping[str, list[tuple[ShownRun, Err
             ax.set_ylabel(f"{label_text(joint, 16)}\n{ax.get_ylabel()}")
             if ax is not axes[-1]:
                 ax.set_xlabel("")
-        axes[0].legend(loc="upper right", ncols=2)
+        made.legend(*axes[0].get_legend_handles_labels(), loc="upper right", ncols=2, borderaxespad=0.1)
         return made
 
     return Plan(

@@ -74,7 +74,7 @@ def _move_to(page: webdriver.Chrome, strip: Any, share: float) -> None:
 
 def _read_out(page: webdriver.Chrome) -> dict[str, str]:
     names = [element.text for element in page.find_elements("css selector", "#read-out dt")]
-    values = [element.text for element in page.find_elements("css selector", "#read-out dd")]
+    values = [element.text for element in page.find_elements("css selector", "#read-out dd:not(.long)")]
     return dict(zip(names, values, strict=True))
 
 

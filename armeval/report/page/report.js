@@ -94,7 +94,6 @@
   const tell = (s) => {
     const rows = [["path length s", `${s.toFixed(1)} mm`], ["planned time t", `${data.time[place].toFixed(2)} s`]];
     const inside = data.regions.filter((region) => s >= region.start && s <= region.end).map((region) => `${data.runs[region.run].name}: ${region.joint}`);
-    rows.push(["at rest here", inside.length ? [...new Set(inside)].join(", ") : "none"]);
     for (const joint of data.joints) rows.push([joint.name, `${joint.target[place].toFixed(1)} ${joint.unit}`]);
     for (const run of data.runs) rows.push([`error, ${run.name}`, `${run.error[place].toFixed(2)} mm`]);
     const list = document.createElement("dl");
@@ -102,6 +101,9 @@
       list.appendChild(document.createElement("dt")).textContent = name;
       list.appendChild(document.createElement("dd")).textContent = value;
     }
+    const rests = list.appendChild(document.createElement("dd"));
+    rests.className = "long";
+    rests.textContent = inside.length ? `at rest here: ${[...new Set(inside)].join(", ")}` : "no rest here";
     readOut.replaceChildren(list);
   };
 
