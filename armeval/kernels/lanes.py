@@ -286,14 +286,21 @@ register_model(LaneRecord)(models.RecordModel)
 
 
 def _laned(record: types.Record) -> LaneRecord:
-    """Give a record's type with lanes in the place of every last axis of eight."""
+    """Give a record's type with lanes in the place of every last axis of eight.
+
+    It claims no alignment: a copy that numpy made may start anywhere.
+    """
     fields = []
     for name, field in record.fields.items():
         kind = field.type
         if isinstance(kind, types.NestedArray) and kind.shape[-1] == WIDTH:
-            kind = lanes if kind.ndim == 1 else types.NestedArray(lanes, kind.shape[:-1])
+            if kind.ndim == 1:
+                kind = lanes
+            else:
+                kind = types.NestedArray(lanes, kind.shape[:-1])
+                kind.aligned = False
         fields.append((name, {"type": kind, "offset": field.offset, "title": field.title}))
-    return LaneRecord(fields, record.size, record.aligned)
+    return LaneRecord(fields, record.size, False)
 
 
 @intrinsic
