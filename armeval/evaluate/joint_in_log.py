@@ -8,6 +8,7 @@ import numpy as np
 
 from armeval.arrays import BoolArray, FloatArray, IntArray
 from armeval.evaluate.lap_track import LapTrack
+from armeval.evaluate.rest import sample_period
 from armeval.evaluate.servo_torque import servo_torque
 from armeval.kernels.periodic import hermite_table
 from armeval.model.arm import Arm
@@ -58,21 +59,22 @@ def target_speed(track: LapTrack) -> FloatArray:
     time, target = track.time, track.target
     if track.source == "prediction":
         return np.asarray(np.gradient(target, time, axis=0))
-    half = max(1, round(0.5 * _SPEED_WINDOW / float(np.median(np.diff(time)))))
+    half = max(1, round(0.5 * _SPEED_WINDOW / sample_period(time)))
     index = np.arange(len(time))
     before, after = np.maximum(index - half, 0), np.minimum(index + half, len(time) - 1)
     return np.asarray((target[after] - target[before]) / (time[after] - time[before])[:, None])
 
 
-def joints_in_log(arm: Arm, track: LapTrack) -> tuple[JointInLog, ...]:
+def joints_in_log(arm: Arm, track: LapTrack, told: FloatArray) -> tuple[JointInLog, ...]:
     """Bring a measured lap and the arm's model together, joint by joint.
 
-    A log faster than the servo is thinned to the servo's rate: between two runs of the servo nothing is decided.
+    A log faster than the servo is thinned to the servo's rate: between two runs of the servo nothing is decided. The
+    speeds of the targets, ``told`` of shape (k, n) [rad/s], are those of :func:`target_speed`.
     """
-    stride = max(1, round(arm.servo.period / float(np.median(np.diff(track.time)))))
+    stride = max(1, round(arm.servo.period / sample_period(track.time)))
     time, angle, target = track.time[::stride], track.angle[::stride], track.target[::stride]
-    told = target_speed(track)[::stride]
-    period = float(np.median(np.diff(time)))
+    told = told[::stride]
+    period = sample_period(time)
     torque = servo_torque(arm, period, angle, target, told)
     if arm.servo.inertia_feedforward:
         torque = torque + _inertia_torque(arm, angle, np.gradient(told, time, axis=0))

@@ -8,7 +8,7 @@ import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.evaluate.cog_orders import expected_orders, orders
-from armeval.evaluate.rest import RELEASE_WINDOW, Rest, stretches
+from armeval.evaluate.rest import RELEASE_WINDOW, Rest, sample_period, stretches
 from armeval.model.drive import Drive
 from armeval.model.trial import StickingRule
 
@@ -63,7 +63,7 @@ def jumps(
     later = np.minimum(np.searchsorted(time, time + RELEASE_WINDOW), len(time) - 1)
     moving = (np.abs(told) >= rule.least_target_speed) & (way[later] == way)
     gained = np.where(moving, behind - behind[later], 0.0)
-    period = float(np.median(np.diff(time)))
+    period = sample_period(time)
     free_from = -np.inf
     for first, stop in stretches(gained >= max(JUMP_SHARE * pitch, 4.0 * count)):
         best = first + int(np.argmax(gained[first:stop]))

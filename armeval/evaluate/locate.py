@@ -250,6 +250,11 @@ def _flat(entry: dict[str, JsonValue]) -> dict[str, JsonValue]:
     return {**entry, "routes": "; ".join(f"{route['name']}: {route['says']}" for route in routes)}
 
 
+def _behind(lag: float) -> str:
+    way = ("falls", "behind") if lag >= 0.0 else ("comes", "nearer")
+    return f"the tip {way[0]} {length_text(abs(lag), 2)} {way[1]}"
+
+
 def _run_text(run: RunSticking, most: int) -> str:
     how = "measured" if run.source == "log" else "predicted"
     state = "compensated" if run.compensated else "bare"
@@ -261,8 +266,8 @@ def _run_text(run: RunSticking, most: int) -> str:
         lines.append(
             f"{rank:3d}. {region.joint} at {length_text(region.start_arc, 4)} to {length_text(region.end_arc, 4)}: "
             f"{region.laps} of {region.of_laps} laps, rests {time_text(region.dwell, 2)} "
-            f"at {angle_text(region.joint_angle)}, lags {length_text(region.lag, 2)}, "
-            f"springs {length_text(region.release_distance, 2)}; {region.cause}; "
+            f"at {angle_text(region.joint_angle)}, {_behind(region.lag)}, "
+            f"then springs {length_text(region.release_distance, 2)}; {region.cause}; "
             f"{100.0 * region.harm:.1f} % of the squared error"
         )
         if region.action:

@@ -39,6 +39,11 @@ class Rest:
     probability: float = 1.0
 
 
+def sample_period(time: FloatArray) -> float:
+    """Time between samples [s]: the median over the first thousand, which a lost sample does not move."""
+    return float(np.median(np.diff(time[:1001])))
+
+
 def stretches(flag: BoolArray) -> IntArray:
     """Find where a flag stays up: shape (r, 2), first sample and the one after the last."""
     edges = np.diff(np.concatenate(([0], flag.astype(np.int8), [0])))
@@ -58,7 +63,7 @@ def rests_by_speed(
         The thresholds.
     """
     resting = (np.abs(told) >= rule.least_target_speed) & (np.abs(speed) < rule.speed_share * np.abs(told))
-    half = 0.5 * float(np.median(np.diff(time)))
+    half = 0.5 * sample_period(time)
     for first, stop in stretches(resting):
         start, end = float(time[first]), float(time[min(stop, len(time) - 1)])
         if end - start >= rule.least_dwell - 1e-9:

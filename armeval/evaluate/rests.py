@@ -37,7 +37,7 @@ def sticking_events(arm: Arm, track: LapTrack, rule: StickingRule) -> tuple[Stic
     The events in order of time, their causes not yet looked for.
     """
     told = target_speed(track)
-    logged = joints_in_log(arm, track) if track.speed is None else ()
+    logged = joints_in_log(arm, track, told) if track.speed is None else ()
     events: list[StickingEvent] = []
     for j, drive in enumerate(arm.drives):
         time, angle, target, speed = track.time, track.angle[:, j], track.target[:, j], told[:, j]

@@ -16,7 +16,7 @@ import numpy as np
 
 from armeval.arrays import FloatArray, IntArray
 from armeval.evaluate.joint_in_log import JointInLog
-from armeval.evaluate.rest import Rest, stretches
+from armeval.evaluate.rest import Rest, sample_period, stretches
 from armeval.evaluate.threads import spread
 from armeval.kernels.rest_filter import MISFIT_STEPS, RestPrior, even_normals, normal_pool, rest_probability
 from armeval.kernels.still import within_width
@@ -29,10 +29,10 @@ _PILOT, _PARTICLES = 256, 1024  # simulated joints: the many follow only where s
 _HOPELESS = 0.01  # probability of rest below which the few decide
 _LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.060, 0.010  # s of the log before and after the still counts that are looked at
 _EDGE = 0.080  # s: further inside a long stretch of still counts, every fifth sample will do
-_SURE_COUNTS = 15.0  # so far the target moves while the joint's count stays: whatever holds it, it hardly moves
+_SURE_COUNTS = 40.0  # so far the target moves while the joint's count stays: whatever holds it, it hardly moves
 _SURE = 0.9  # probability that is taken for that
 _DWELL_SHARE = 0.8  # a rest counts from this share of the least dwell: its ends are uncertain by a few milliseconds
-_PEAK, _FLANK = 0.5, 0.45  # probability that a rest must reach, and where it begins and ends
+_PEAK, _FLANK = 0.6, 0.5  # probability that a rest must reach, and where it begins and ends
 _TOLERANCE = 0.2  # counts by which a simulated joint may miss a reading of an encoder without jitter, one sigma
 _NO_JITTER = 0.05  # counts, one sigma: less is none
 _ODD_READINGS = 1e-4  # share of readings that may be anything
@@ -54,7 +54,7 @@ def rests_in_counts(joint: JointInLog, rule: StickingRule) -> Iterator[Rest]:
     """
     probability, angle, angle_spread = _rest_probability(joint, rule)
     told = np.abs(joint.told) >= rule.least_target_speed
-    period = float(np.median(np.diff(joint.time)))
+    period = sample_period(joint.time)
     for first, stop in stretches((probability >= _FLANK) & told):
         last = min(stop, len(joint.time) - 1)
         dwell = joint.time[last] - joint.time[first]

@@ -82,7 +82,7 @@ def test_few_rests_show_no_periodicity():
 
 def test_a_joint_at_the_end_of_its_range_is_held_by_the_limit():
     case = Case(upper=0.40)
-    target, told = ramp(0.1, 2.0)
+    target, _told = ramp(0.1, 2.0)
     arm = case.arm()
     (event,) = caused(arm, lap(arm, target, np.minimum(target, 0.40)))
     assert event.cause == "joint limit"
@@ -91,7 +91,7 @@ def test_a_joint_at_the_end_of_its_range_is_held_by_the_limit():
 def test_a_torque_at_its_limit_is_the_cause():
     case = Case(limit=0.02)
     arm = case.arm()
-    target, told = ramp(0.1, 2.0)
+    target, _told = ramp(0.1, 2.0)
     angle = np.minimum(target, 0.38)
     torque = np.clip(case.K * (target - angle), -0.02, 0.02)
     (event,) = caused(arm, lap(arm, target, angle, torque=torque))

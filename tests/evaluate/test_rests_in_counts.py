@@ -25,13 +25,13 @@ def truly_resting(case, target, told):
 def test_a_joint_moving_at_one_count_every_30_ms_is_moving(counts, every):
     count = 2.0 * math.pi / counts
     speed = max(count / 0.030, 0.0205)  # fast encoders count faster at any speed that matters
-    target, told = ramp(speed, 4.0)
+    target, _told = ramp(speed, 4.0)
     case = Case(counts=counts)
     assert rests(case.arm(), lap(case.arm(), target, target - 0.003, every=every)) == []
 
 
 def test_a_joint_that_follows_smoothly_at_a_third_of_its_targets_speed_is_moving():
-    target, told = ramp(0.06, 3.0)
+    target, _told = ramp(0.06, 3.0)
     slowly = target[0] + (target - target[0]) / 3.0
     case = Case(counts=8192, T=0.0, K=0.05)
     assert rests(case.arm(with_map=False), lap(case.arm(), target, slowly)) == []
@@ -62,7 +62,7 @@ def test_rests_at_reversals_are_found_where_they_are(counts, every):
 @pytest.mark.parametrize("jitter", [0.0, 0.3])
 def test_a_joint_that_stands_against_an_obstacle_rests_whatever_friction_says(jitter):
     count = 2.0 * math.pi / 16384
-    target, told = ramp(0.1, 2.0)
+    target, _told = ramp(0.1, 2.0)
     angle = target.copy()
     angle[800:1000] = angle[800]  # the pull grows to six times the breakaway friction
     angle[1000:1050] = np.linspace(angle[800], angle[1050], 50)
@@ -74,7 +74,7 @@ def test_a_joint_that_stands_against_an_obstacle_rests_whatever_friction_says(ji
 def test_a_count_that_toggles_does_not_hide_a_rest():
     case = Case(Fc=0.006, Fs=0.007)
     target, told = to_and_fro(0.15, turns=6)
-    angle, resting = truly_resting(case, target, told)
+    angle, _resting = truly_resting(case, target, told)
     count = 2.0 * math.pi / case.counts
     toggling = angle + 0.3 * count * np.random.default_rng(8).standard_normal(len(angle))
     quiet, found = (rests(case.arm(), lap(case.arm(), target, place)) for place in (angle, toggling))
