@@ -230,7 +230,7 @@ def feel(
 def _motion(trial: Trial, hand: Hand, trajectory: Trajectory | None) -> HandMotion:
     if hand.run is None:
         plan = plan_trial(trial, near_singular=True) if trajectory is None else trajectory
-        return planned_motion(trial.arm, plan, bandwidth=hand.bandwidth)
+        return planned_motion(trial.arm, plan, bandwidth=hand.bandwidth, space=trial.path.space)
     run = trial.run(hand.run)
     if not run.laps:
         raise InputError(

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 
 from armeval.arrays import BoolArray, FloatArray
 from armeval.errors import InputError
 from armeval.kernels.chain import tip_positions
-from armeval.kernels.inverse import reach_of
+from armeval.kernels.inverse import poses_along, reach_of
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from armeval.model.trajectory import Trajectory
@@ -104,14 +105,31 @@ class HandMotion:
         return np.asarray(way / way.sum()) if way.max() > _STILL else np.full(len(way), 1.0 / len(way))
 
 
-def planned_motion(arm: Arm, trajectory: Trajectory, *, bandwidth: float = math.inf) -> HandMotion:
-    """Let the hand follow a planned trajectory, no faster than a hand can."""
-    step = trajectory.time[1] - trajectory.time[0]
+def planned_motion(
+    arm: Arm, trajectory: Trajectory, *, bandwidth: float = math.inf, space: Literal["tip", "joint"] = "joint"
+) -> HandMotion:
+    """Let the hand follow a planned trajectory, no faster than a hand can.
+
+    Parameters
+    ----------
+    arm, trajectory
+        The trajectory is one that was planned for this arm.
+    bandwidth
+        Where the motion is smoothed [Hz].
+    space
+        Whether the path of the tip or that of the joints was given; that one is smoothed.
+    """
+    step = float(trajectory.time[1] - trajectory.time[0])
     speed = np.diff(trajectory.tip, axis=0) / step
     usual = float(np.quantile(np.linalg.norm(speed, axis=1), 0.95))
     change = np.linalg.norm(np.diff(speed, axis=0), axis=1)
     jolts = np.concatenate([[False], change > _JOLT * max(usual, _STILL), [False]])
-    return _motion(arm, trajectory.time, trajectory.joint, "planned", bandwidth, jolts, trajectory.arc)
+    if space == "tip":
+        tip = np.ascontiguousarray(_low_pass(trajectory.tip, step, bandwidth))
+        joint, _ = poses_along(arm.chain.arrays, tip, arm.rest, trajectory.joint[0])
+    else:
+        joint = _low_pass(trajectory.joint, step, bandwidth)
+    return _motion(arm, trajectory.time, joint, trajectory.tip, "planned", bandwidth, jolts, trajectory.arc)
 
 
 def logged_motion(arm: Arm, log: JointLog, *, name: str, bandwidth: float) -> HandMotion:
@@ -130,32 +148,34 @@ def logged_motion(arm: Arm, log: JointLog, *, name: str, bandwidth: float) -> Ha
         raise InputError(f"the log holds {count} samples", "log a longer motion", file=log.source)
     time: FloatArray = np.arange(count, dtype=np.float64) * period
     joint = np.column_stack([np.interp(time, logged, column) for column in angle.T])
-    return _motion(arm, time, joint, f"run {name}, lap {log.lap}", bandwidth, np.zeros(count, dtype=np.bool_), None)
+    given, jolts = tip_positions(arm.chain.arrays, joint), np.zeros(count, dtype=np.bool_)
+    smoothed = _low_pass(joint, period, bandwidth)
+    return _motion(arm, time, smoothed, given, f"run {name}, lap {log.lap}", bandwidth, jolts, None)
 
 
 def _motion(
     arm: Arm,
     time: FloatArray,
     joint: FloatArray,
+    given: FloatArray,
     source: str,
     bandwidth: float,
     jolts: BoolArray,
     arc: FloatArray | None,
 ) -> HandMotion:
-    chain, step = arm.chain.arrays, float(time[1] - time[0])
-    given = tip_positions(chain, np.ascontiguousarray(joint))
-    smoothed = np.ascontiguousarray(_low_pass(joint, step, bandwidth))
-    tip = tip_positions(chain, smoothed)
-    bend = np.zeros_like(smoothed)
-    bend[1:-1] = (smoothed[2:] - 2.0 * smoothed[1:-1] + smoothed[:-2]) / step**2
+    step = float(time[1] - time[0])
+    joint = np.ascontiguousarray(joint)
+    tip = tip_positions(arm.chain.arrays, joint)
+    bend = np.zeros_like(joint)
+    bend[1:-1] = (joint[2:] - 2.0 * joint[1:-1] + joint[:-2]) / step**2
     if arc is None:
         arc = np.concatenate([np.zeros(1), np.cumsum(np.linalg.norm(np.diff(tip, axis=0), axis=1))])
     return HandMotion(
         time=np.asarray(time - time[0]),
         arc=arc,
         tip=tip,
-        joint=smoothed,
-        joint_speed=np.gradient(smoothed, step, axis=0),
+        joint=joint,
+        joint_speed=np.gradient(joint, step, axis=0),
         joint_acceleration=bend,
         source=source,
         bandwidth=bandwidth,

@@ -60,3 +60,20 @@ def test_a_demo_that_is_not_there_is_told(armeval, tmp_path):
     said = armeval("demo", tmp_path / "led", "--trial", "fell")
     assert said.code == 2
     assert "feel" in said.out + said.err
+
+
+def test_an_arm_without_limits_and_rotors_gives_what_can_be_had_and_says_what_cannot(armeval, starter):
+    arm = starter.parent / "tern" / "arm.toml"
+    kept = [
+        line for line in arm.read_text(encoding="utf-8").splitlines() if not line.startswith(("torque_limit", "rotor"))
+    ]
+    arm.write_text("\n".join(kept) + "\n", encoding="utf-8")
+    _hand(starter)
+    said = armeval("feel", starter, "--members", "8", "--json")
+    assert said.code == 0
+    assert "no joint has a `torque_limit`" in said.err
+    assert "no joint has a `rotor_inertia`" in said.err
+    figures = {entry["figure"]: entry["median"] for entry in said.document["abilities"]}
+    assert figures["continuous_force_N"] is None
+    assert figures["mass_most_kg"] > 0.0
+    assert said.document["states"][0]["ripple"]["rms_N"] > 0.0

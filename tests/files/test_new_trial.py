@@ -8,7 +8,7 @@ from armeval.errors import InputError
 from armeval.files.check import check
 from armeval.files.new_trial import new_trial, robot_folder, robot_names
 from armeval.files.trial_file import read_trial
-from armeval.files.trial_table import CompensationTable, RunTable, StickingTable, TrialTable, UncertaintyTable
+from armeval.files.trial_table import CompensationTable, HandTable, RunTable, StickingTable, TrialTable, UncertaintyTable
 from tests.files.findings import only_fault
 
 
@@ -53,7 +53,7 @@ def test_every_line_that_is_commented_out_may_be_used_as_it_stands(tmp_path):
 
 def test_the_starter_shows_every_key_that_a_trial_may_have(tmp_path):
     text = new_trial(tmp_path / "mine", "tern").read_text(encoding="utf-8")
-    for table in (TrialTable, CompensationTable, StickingTable, UncertaintyTable, RunTable):
+    for table in (TrialTable, CompensationTable, HandTable, StickingTable, UncertaintyTable, RunTable):
         for name, field in table.model_fields.items():
             assert re.search(rf"(?m)^#? ?\[*{field.alias or name}\b", text), name
 

@@ -57,7 +57,7 @@ def _both(name: str, compensated: bool, carries_weight: bool) -> tuple[np.ndarra
     ]
     path = read_path(robot_folder(name) / "starter_path.csv", arm.joints, [False] * len(arm.joints))
     trajectory = plan(arm, replace(path, points=path.points[:40]), feed=0.06, acceleration=1.0)
-    given = motion = planned_motion(arm, trajectory, bandwidth=10.0)
+    given = motion = planned_motion(arm, trajectory, bandwidth=10.0, space="tip")
     if len(arm.joints) > 3:
         motion = with_inner_motion(arm, given, compensated=compensated, compensation=LAW, carries_weight=carries_weight)
     force = hand_force(arm, motion, compensated=compensated, compensation=LAW, carries_weight=carries_weight)
