@@ -8,7 +8,14 @@ from armeval.errors import InputError
 from armeval.files.check import check
 from armeval.files.new_trial import new_trial, robot_folder, robot_names
 from armeval.files.trial_file import read_trial
-from armeval.files.trial_table import CompensationTable, HandTable, RunTable, StickingTable, TrialTable, UncertaintyTable
+from armeval.files.trial_table import (
+    CompensationTable,
+    HandTable,
+    RunTable,
+    StickingTable,
+    TrialTable,
+    UncertaintyTable,
+)
 from tests.files.findings import only_fault
 
 
