@@ -147,6 +147,7 @@ def pose_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
     front = broad_view(plan.path)
     side = side_view(skeleton, front)
     views = [front] if side is None else [front, side]
+    place = "in region 1" if runs[0].sticking.regions else "at the start of the path"
 
     def draw(width: float) -> Figure:
         shown = views if width > _SMALL else views[:1]
@@ -159,7 +160,7 @@ def pose_figure(answers: Answers, runs: Sequence[ShownRun]) -> Plan:
 
     return Plan(
         "pose",
-        "The arm in its planned pose at the marked place, with the path in grey.",
+        f"The arm in its planned pose, with the path in grey: {place}, or wherever the mark stands.",
         draw,
         "The arm in its pose, drawn through its joints, and the path.",
         data=lambda made: {

@@ -92,8 +92,8 @@
   };
 
   const tell = (s) => {
-    const rows = [["path length s", `${s.toFixed(1)} mm`], ["planned time t", `${data.time[place].toFixed(2)} s`]];
-    const inside = data.regions.filter((region) => s >= region.start && s <= region.end).map((region) => `${data.runs[region.run].name}: ${region.joint}`);
+    const rows = [["length s", `${s.toFixed(1)} mm`], ["time t", `${data.time[place].toFixed(2)} s`]];
+    const inside = data.regions.filter((region) => s >= region.start && s <= region.end).map((region) => `${region.joint} in ${data.runs[region.run].name}`);
     for (const joint of data.joints) rows.push([joint.name, `${joint.target[place].toFixed(1)} ${joint.unit}`]);
     for (const run of data.runs) rows.push([`error, ${run.name}`, `${run.error[place].toFixed(2)} mm`]);
     const list = document.createElement("dl");
@@ -103,7 +103,7 @@
     }
     const rests = list.appendChild(document.createElement("dd"));
     rests.className = "long";
-    rests.textContent = inside.length ? `at rest here: ${[...new Set(inside)].join(", ")}` : "no rest here";
+    rests.textContent = inside.length ? `at rest: ${[...new Set(inside)].join(", ")}` : "at rest: none";
     readOut.replaceChildren(list);
   };
 
@@ -186,6 +186,7 @@
   for (const chip of document.querySelectorAll(".chip")) {
     chip.addEventListener("click", () => choose(Number(chip.dataset.region)));
   }
+  addEventListener("beforeprint", () => { for (const folded of document.querySelectorAll("details")) folded.open = true; });
   document.addEventListener("keydown", (event) => { if (event.key === "Escape") choose(-1); });
 
   for (const element of document.querySelectorAll(".read-out, .hint, .chips")) element.hidden = false;
