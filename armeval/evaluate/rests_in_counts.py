@@ -25,8 +25,8 @@ from armeval.model.trial import StickingRule
 LEAST_COUNTS = 2.8
 """While it rests, a joint's target must move by this many counts: three, less what rounding takes at both ends."""
 
-_PILOT, _PARTICLES = 256, 1024  # simulated joints: the many follow only where some of the few have rested
-_HOPELESS = 0.01  # probability of rest below which the few decide
+_PILOT, _PARTICLES = 256, 2048  # simulated joints: the many follow only where some of the few have rested
+_HOPELESS = 0.02  # probability of rest below which the few decide
 _LEAD, _TAIL, _LEAST_TAIL = 0.060, 0.060, 0.010  # s of the log before and after the still counts that are looked at
 _EDGE = 0.080  # s: further inside a long stretch of still counts, every fifth sample will do
 _SURE_COUNTS = 40.0  # so far the target moves while the joint's count stays: whatever holds it, it hardly moves
