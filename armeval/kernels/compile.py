@@ -50,6 +50,13 @@ def jit_inline(function: Callable[P, R]) -> Callable[P, R]:
     return compiled
 
 
+def jit_part(function: Callable[P, R]) -> Callable[P, R]:
+    """Compile a part of a kernel that only kernels call: without an entry from Python, which takes longer than most."""
+    options = {"error_model": "numpy", "nogil": True, "fastmath": {"contract"}}
+    compiled: Callable[P, R] = numba.njit(no_cpython_wrapper=True, no_cfunc_wrapper=True, **options)(function)
+    return compiled
+
+
 def _keep_on_disk(compiled: Any, function: Callable[..., Any]) -> None:
     """Give a compiled function its cache; where numba's inside has changed, numba's own; where none can be, none."""
     if compiled is function:

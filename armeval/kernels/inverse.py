@@ -10,6 +10,9 @@ where it cannot, it is the pose whose tip is nearest to x. The minimum is found 
 projected on the ranges, joints that press against a limit held). The curvature of tip(q) enters with the multiplier
 lambda = (x - tip(q)) / mu of the constraint, carried from step to step (a primal-dual penalty method), which keeps the
 convergence quadratic also in the directions that do not move the tip.
+
+There is one compiled entry, :func:`_follow`, and one place in it that descends: every further one would be optimised
+anew, for seconds. What is done once a path, or a few dozen times, is plain Python around it.
 """
 
 from __future__ import annotations
@@ -21,7 +24,7 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.kernels.chain import ChainArrays, joint_frames, tip_jacobian, tip_position
 from armeval.kernels.cholesky import factor_in_place, solve_in_place
-from armeval.kernels.compile import jit
+from armeval.kernels.compile import jit, jit_part
 
 _SMALL = 1e-12
 """Weight of the rest angles against the tip error, per squared reach."""
@@ -43,42 +46,18 @@ class _Space(NamedTuple):
     A: FloatArray
     step: FloatArray
     trial: FloatArray
+    downhill: FloatArray
     weight: FloatArray
     dual: FloatArray
 
 
-@jit
-def _space(chain: ChainArrays, reach: float) -> _Space:
-    n = chain.lower.shape[0]
-    weight = np.ones(n)
-    for i in range(n):
-        if chain.prismatic[i]:
-            weight[i] = 1.0 / (reach * reach)
-    return _Space(
-        np.empty((n, 3, 3)),
-        np.empty((n, 3)),
-        np.empty(3),
-        np.empty((3, n)),
-        np.empty((n, n)),
-        np.empty(n),
-        np.empty(n),
-        weight,
-        np.zeros(3),
-    )
-
-
-@jit
 def reach_of(chain: ChainArrays) -> float:
     """Length of the outstretched chain from its first joint to the tip [m], slides at zero; 1 if it has none."""
-    n = chain.lower.shape[0]
-    reach = np.sqrt(chain.tip[0] ** 2 + chain.tip[1] ** 2 + chain.tip[2] ** 2)
-    for i in range(1, n):
-        P = chain.placement[i]
-        reach += np.sqrt(P[0, 3] ** 2 + P[1, 3] ** 2 + P[2, 3] ** 2)
+    reach = float(np.linalg.norm(chain.tip) + np.linalg.norm(chain.placement[1:, :, 3], axis=1).sum())
     return reach if reach > 0.0 else 1.0
 
 
-@jit
+@jit_part
 def _cost(chain: ChainArrays, target: FloatArray, rest: FloatArray, mu: float, q: FloatArray, space: _Space) -> float:
     joint_frames(chain, q, space.rotation, space.origin)
     tip_position(chain, space.rotation, space.origin, space.tip)
@@ -90,9 +69,9 @@ def _cost(chain: ChainArrays, target: FloatArray, rest: FloatArray, mu: float, q
     return 0.5 * cost
 
 
-@jit
-def _matrix(chain: ChainArrays, mu: float, curved: bool, space: _Space) -> None:
-    """Second derivative of the cost, with the curvature of tip(q) where ``curved``.
+@jit_part
+def _matrix(chain: ChainArrays, mu: float, curved: int, space: _Space) -> None:
+    """Second derivative of the cost, with the curvature of tip(q) where ``curved`` is 1.
 
     d2 tip / dq_i dq_j = axis_i x J_j for i <= j where joint i turns, 0 where it slides.
     """
@@ -101,7 +80,7 @@ def _matrix(chain: ChainArrays, mu: float, curved: bool, space: _Space) -> None:
     for j in range(n):
         for i in range(j + 1):
             entry = J[0, i] * J[0, j] + J[1, i] * J[1, j] + J[2, i] * J[2, j]
-            if curved and not chain.prismatic[i]:
+            if curved == 1 and not chain.prismatic[i]:
                 x, y, z = space.rotation[i, 0, 2], space.rotation[i, 1, 2], space.rotation[i, 2, 2]
                 entry -= mu * (
                     space.dual[0] * (y * J[2, j] - z * J[1, j])
@@ -112,9 +91,10 @@ def _matrix(chain: ChainArrays, mu: float, curved: bool, space: _Space) -> None:
         A[j, j] += mu * space.weight[j]
 
 
-@jit
-def _hold(A: FloatArray, step: FloatArray, chain: ChainArrays, q: FloatArray, downhill: FloatArray) -> None:
+@jit_part
+def _hold(chain: ChainArrays, q: FloatArray, space: _Space) -> None:
     """Take joints out of the system that stand at a limit and press against it."""
+    A, step, downhill = space.A, space.step, space.downhill
     n = q.shape[0]
     for i in range(n):
         step[i] = downhill[i]
@@ -128,16 +108,9 @@ def _hold(A: FloatArray, step: FloatArray, chain: ChainArrays, q: FloatArray, do
             step[i] = 0.0
 
 
-@jit
+@jit_part
 def _descend(
-    chain: ChainArrays,
-    target: FloatArray,
-    rest: FloatArray,
-    mu: float,
-    q: FloatArray,
-    space: _Space,
-    downhill: FloatArray,
-    most: int,
+    chain: ChainArrays, target: FloatArray, rest: FloatArray, mu: float, q: FloatArray, space: _Space, most: int
 ) -> float:
     """Bring q to the minimum of the cost; give the distance from tip to target that is left [m]."""
     n = q.shape[0]
@@ -146,15 +119,14 @@ def _descend(
         tip_jacobian(chain, space.rotation, space.origin, space.tip, space.J)
         ex, ey, ez = target[0] - space.tip[0], target[1] - space.tip[1], target[2] - space.tip[2]
         for i in range(n):
-            downhill[i] = (
+            space.downhill[i] = (
                 space.J[0, i] * ex + space.J[1, i] * ey + space.J[2, i] * ez - mu * space.weight[i] * (q[i] - rest[i])
             )
-        _matrix(chain, mu, True, space)
-        _hold(space.A, space.step, chain, q, downhill)
-        if not factor_in_place(space.A):
-            _matrix(chain, mu, False, space)
-            _hold(space.A, space.step, chain, q, downhill)
-            factor_in_place(space.A)
+        for curved in range(1, -1, -1):
+            _matrix(chain, mu, curved, space)
+            _hold(chain, q, space)
+            if factor_in_place(space.A):
+                break
         solve_in_place(space.A, space.step)
         dx, dy, dz = ex, ey, ez
         largest = 0.0
@@ -188,6 +160,81 @@ def _descend(
 
 
 @jit
+def _follow(
+    chain: ChainArrays,
+    targets: FloatArray,
+    rest: FloatArray,
+    weight: FloatArray,
+    reach: float,
+    poses: FloatArray,
+    left: FloatArray,
+    afar: bool,
+) -> None:
+    """Fill in poses (k, n) for targets (k, 3), and the distances left (k,); the first row of ``poses`` is the start.
+
+    ``afar``: every pose starts with the rest angles' full weight, which falls to its small value. Else only those do
+    that lie nearby, which joints that meet a limit have kept from being reached.
+    """
+    k, n = poses.shape
+    space = _Space(
+        np.empty((n, 3, 3)),
+        np.empty((n, 3)),
+        np.empty(3),
+        np.empty((3, n)),
+        np.empty((n, n)),
+        np.empty(n),
+        np.empty(n),
+        np.empty(n),
+        weight,
+        np.zeros(3),
+    )
+    small, missed = _SMALL * reach * reach, _MISSED * reach
+    q, dual = np.empty(n), np.empty(3)
+    for j in range(k):
+        for i in range(n):
+            ahead = 2.0 * poses[j - 1, i] - poses[j - 2, i] if j >= 2 else poses[max(j - 1, 0), i]
+            q[i] = min(max(ahead, chain.lower[i]), chain.upper[i])
+        for again in range(2):
+            falls, most, mu = (13, 40, reach * reach) if afar or again == 1 else (1, 1000, small)
+            for r in range(3):
+                dual[r] = space.dual[r]
+                if falls > 1:
+                    space.dual[r] = 0.0
+            distance = 0.0
+            for fall in range(falls):
+                if fall > 0:
+                    mu *= 0.1
+                    for r in range(3):
+                        space.dual[r] *= 10.0
+                distance = _descend(chain, targets[j], rest, mu, q, space, most)
+            close = True
+            if again == 1:
+                for r in range(3):
+                    space.dual[r] = dual[r]
+                for i in range(n):
+                    close = close and abs(q[i] - poses[j - 1, i]) < _CLOSE_BY
+            if again == 0 or (distance < left[j] and close):
+                left[j] = distance
+                for i in range(n):
+                    poses[j, i] = q[i]
+            if afar or again == 1 or j == 0 or left[j] <= missed or left[j - 1] > missed:
+                break
+            for i in range(n):
+                q[i] = poses[j - 1, i]
+
+
+def _solve(
+    chain: ChainArrays, targets: FloatArray, rest: FloatArray, start: FloatArray, *, afar: bool
+) -> tuple[FloatArray, FloatArray]:
+    reach = reach_of(chain)
+    weight = np.where(chain.prismatic, 1.0 / (reach * reach), 1.0)
+    poses, left = np.empty((len(targets), len(rest))), np.empty(len(targets))
+    poses[0] = start
+    # Copies: read-only arrays or strided ones would be compiled for anew.
+    _follow(chain, np.array(targets, order="C"), np.array(rest), weight, reach, poses, left, afar)
+    return poses, left
+
+
 def pose_from(chain: ChainArrays, target: FloatArray, rest: FloatArray, start: FloatArray) -> tuple[FloatArray, float]:
     """Pose for one target from a pose that may be far away, the rest angles' weight falling to its small value.
 
@@ -204,51 +251,34 @@ def pose_from(chain: ChainArrays, target: FloatArray, rest: FloatArray, start: F
     -------
     Pose, shape (n,), and the distance from its tip to the target [m].
     """
-    reach = reach_of(chain)
-    space = _space(chain, reach)
-    q = np.minimum(np.maximum(start, chain.lower), chain.upper)
-    downhill = np.empty(q.shape[0])
-    mu = reach * reach
-    left = 0.0
-    for _ in range(13):
-        left = _descend(chain, target, rest, mu, q, space, downhill, 40)
-        mu *= 0.1
-        for r in range(3):
-            space.dual[r] *= 10.0
-    return q, left
+    poses, left = _solve(chain, target[None], rest, start, afar=True)
+    return poses[0], float(left[0])
 
 
-@jit
 def first_pose(chain: ChainArrays, target: FloatArray, rest: FloatArray, tolerance: float) -> FloatArray:
     """Pose for one target, starting from the rest angles; other starts are tried where those lead nowhere.
 
     Among 64 other starts, spread evenly over the joint ranges (a turn about the rest angle where there is none), the
     pose nearest to the rest angles is taken; where none reaches the target, the one whose tip comes nearest.
     """
-    n = rest.shape[0]
     best, best_left = pose_from(chain, target, rest, rest)
     if best_left <= tolerance:
         return best
+    low = np.where(np.isfinite(chain.lower), chain.lower, rest - np.pi)
+    high = np.where(np.isfinite(chain.upper), chain.upper, rest + np.pi)
+    joint = np.arange(len(rest))
+    # Additive recurrence with the roots of integers: even cover in any dimension, the same every time.
+    root = np.sqrt(joint + 2.0 + (joint >= 2))
     best_far = np.inf
-    start = np.empty(n)
-    for k in range(64):
-        for i in range(n):
-            low = chain.lower[i] if np.isfinite(chain.lower[i]) else rest[i] - np.pi
-            high = chain.upper[i] if np.isfinite(chain.upper[i]) else rest[i] + np.pi
-            # Additive recurrence with the roots of integers: even cover in any dimension, the same every time.
-            share = (0.5 + (k + 1) * np.sqrt(i + 2.0 + (i >= 2))) % 1.0
-            start[i] = low + share * (high - low)
-        q, left = pose_from(chain, target, rest, start)
-        far = 0.0
-        for i in range(n):
-            far += (q[i] - rest[i]) ** 2
+    for k in range(1, 65):
+        q, left = pose_from(chain, target, rest, low + (0.5 + k * root) % 1.0 * (high - low))
+        far = float(np.sum((q - rest) ** 2))
         reached, reached_before = left <= tolerance, best_left <= tolerance
         if (reached and (not reached_before or far < best_far)) or (not reached and left < best_left):
             best, best_left, best_far = q, left, far
     return best
 
 
-@jit
 def poses_along(
     chain: ChainArrays, targets: FloatArray, rest: FloatArray, start: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
@@ -272,26 +302,4 @@ def poses_along(
     left
         Shape (k,) [m]. Distance from the pose's tip to its target: 0 (picometres) where it is reached.
     """
-    k, n = targets.shape[0], rest.shape[0]
-    reach = reach_of(chain)
-    mu = _SMALL * reach * reach
-    space = _space(chain, reach)
-    poses = np.empty((k, n))
-    left = np.empty(k)
-    q = np.minimum(np.maximum(start, chain.lower), chain.upper)
-    downhill = np.empty(n)
-    for j in range(k):
-        if j >= 2:
-            for i in range(n):
-                ahead = 2.0 * poses[j - 1, i] - poses[j - 2, i]
-                q[i] = min(max(ahead, chain.lower[i]), chain.upper[i])
-        left[j] = _descend(chain, targets[j], rest, mu, q, space, downhill, 1000)
-        if left[j] > _MISSED * reach and j > 0 and left[j - 1] <= _MISSED * reach:
-            # Joints that meet a limit can hold the descent up; from afar it may still find a pose close by.
-            again, again_left = pose_from(chain, targets[j], rest, poses[j - 1])
-            if again_left < left[j] and np.abs(again - poses[j - 1]).max() < _CLOSE_BY:
-                q[:] = again
-                left[j] = again_left
-        for i in range(n):
-            poses[j, i] = q[i]
-    return poses, left
+    return _solve(chain, targets, rest, start, afar=False)
