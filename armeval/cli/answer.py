@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from pathlib import Path
 from typing import Annotated, Protocol
 
@@ -32,6 +32,15 @@ class Answer(Protocol):
         ...
 
 
+class Drawn(Protocol):
+    """What can be written as a picture."""
+
+    @property
+    def savefig(self) -> Callable[[Path], object]:
+        """Write the picture."""
+        ...
+
+
 class Tabular(Protocol):
     """What can be written as a CSV table."""
 
@@ -50,6 +59,7 @@ def hand_over(
     as_json: bool,
     out: Path | None,
     force: bool,
+    figures: Callable[[], Mapping[str, Drawn]] | None = None,
 ) -> None:
     """Print the answer and, with a folder given, write it there, all files or none.
 
@@ -65,6 +75,8 @@ def hand_over(
         What was doubtful about the input; like all warnings it goes to stderr.
     as_json, out, force
         The options of the command line.
+    figures
+        Draws pictures, by the name of the PNG file they become; called only where there is a folder to write to.
     """
     if findings:
         typer.echo(findings_text(findings), err=True)
@@ -79,5 +91,7 @@ def hand_over(
             (folder / f"{name}.json").write_text(answer.to_json(), encoding="utf-8")
             for table_name, table in tables.items():
                 table.to_csv(folder / f"{table_name}.csv", index=False)
+            for figure_name, figure in (figures() if figures is not None else {}).items():
+                figure.savefig(folder / f"{figure_name}.png")
         typer.echo(f"written to {out}", err=True)
     typer.echo(answer.to_json() if as_json else text, nl=not as_json)

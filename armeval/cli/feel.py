@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from armeval.cli.answer import AsJson, Force, OutFolder, TrialFile
+from armeval.cli.answer import AsJson, Drawn, Force, OutFolder, TrialFile
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -57,7 +58,14 @@ def feel(
         as_json=as_json,
         out=out,
         force=force,
+        figures=lambda: _figures(met),
     )
+
+
+def _figures(met: Feel) -> Mapping[str, Drawn]:
+    from armeval.plots.feel_figures import feel_figures
+
+    return feel_figures(met)
 
 
 def _tables(met: Feel) -> dict[str, pd.DataFrame]:

@@ -38,6 +38,8 @@ def test_json_is_one_document_and_out_writes_every_table(armeval, starter, tmp_p
     assert document["workspace"]["spacing_m"] == 0.06
     tables = {file.name for file in out.glob("*.csv")}
     assert tables == {"feel.csv", "lines.csv", "along.csv", "abilities.csv", "workspace.csv"}
+    pictures = {file.name for file in out.glob("*.png")}
+    assert pictures == {"force.png", "direction.png", "spectrum.png", "workspace.png"}
 
 
 def test_a_hand_that_is_wrong_is_told_with_the_way_out(armeval, starter):
