@@ -80,19 +80,19 @@ def action(
     J = _at_region(inertia_along(arm, track.angle)[:, j], track, region)
     stiffer = _stiffer(arm, j, K, max(ratio, 1.0) * K, J)
     if table is None:
-        return f"Compensate {joint}'s cogging first; {stiffer}.{carry}"
+        return f"Compensate {joint}'s cogging first{stiffer}.{carry}"
     missed = _missed(drive.cog_map, compensation) if drive.cog_map is not None else ""
-    return f"Mend {joint}'s compensation first: {missed}; {stiffer}.{carry}"
+    return f"Mend {joint}'s compensation first: {missed}{stiffer}.{carry}"
 
 
 def _stiffer(arm: Arm, j: int, K: float, wanted: float, inertia: float) -> str:
     """Say whether the joint could be made stiff enough."""
     drive, servo = arm.drives[j], arm.servo
-    told = f"or raise its stiffness from {significant(K, 2)} to above {significant(wanted, 2)} N·m/rad"
+    told = f", or raise its stiffness from {significant(K, 2)} to above {significant(wanted, 2)} N·m/rad"
     if servo.law != "joint_pd":
         return f"{told}, by the tip's stiffness"
     if wanted <= K:
-        return f"stiffness is not what is missing ({significant(K, 2)} N·m/rad)"
+        return f"; its stiffness of {significant(K, 2)} N·m/rad already exceeds the cogging's slope"
     wait = servo.delay + 0.5 * servo.period
     most = largest_stiffness(inertia, drive.stiffness, drive.damping, wait, servo.speed_cutoff)
     steepest = _most_cogging(drive.cog_map, drive.gear_ratio)

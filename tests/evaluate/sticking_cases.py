@@ -70,14 +70,21 @@ class Case:
 
 def moved(case: Case, target, told):
     """True angle and speed (k,) of the joint."""
+    return moved_and_read(case, target, told)[:2]
+
+
+def moved_and_read(case: Case, target, told, *, jitter: float = 0.0, seed: int = 0):
+    """True angle, true speed and what the encoder read (k,) each, with jitter in counts that the firmware meets too."""
+    noise = jitter * np.random.default_rng(seed).standard_normal(len(target))
     step, count = PERIOD / 8, 2.0 * math.pi / case.counts
     blend = 1.0 - math.exp(-2.0 * math.pi * 120.0 * PERIOD)
     q, v, filtered, waiting = float(target[0]), 0.0, 0.0, 0.0
     seen = round(q / count) * count
-    angle, speed = np.empty(len(target)), np.empty(len(target))
+    angle, speed, read = np.empty(len(target)), np.empty(len(target)), np.empty(len(target))
     for i in range(len(target)):
         angle[i], speed[i] = q, v
-        before, seen = seen, round(q / count) * count
+        before, seen = seen, round(q / count + noise[i]) * count
+        read[i] = seen
         filtered += blend * ((seen - before) / PERIOD - filtered)
         sent = case.K * (target[i] - seen) + case.D * (told[i] - filtered)
         acting, waiting = waiting, min(max(sent, -case.limit), case.limit)
@@ -87,7 +94,7 @@ def moved(case: Case, target, told):
             held = step * bound / case.J
             v = max(free - held, 0.0) if free > 0.0 else min(free + held, 0.0)
             q += step * v
-    return angle, speed
+    return angle, speed, read
 
 
 def lap(

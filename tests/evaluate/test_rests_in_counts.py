@@ -6,7 +6,7 @@ import pytest
 from armeval.evaluate.rests import sticking_events
 from armeval.evaluate.rests_in_counts import encoder_jitter, still_stretches
 from armeval.model.trial import StickingRule
-from tests.evaluate.sticking_cases import PERIOD, Case, lap, moved, ramp, to_and_fro
+from tests.evaluate.sticking_cases import PERIOD, Case, lap, moved, moved_and_read, ramp, to_and_fro
 
 RULE = StickingRule()
 
@@ -73,15 +73,14 @@ def test_a_joint_that_stands_against_an_obstacle_rests_whatever_friction_says(ji
 
 def test_a_count_that_toggles_does_not_hide_a_rest():
     case = Case(Fc=0.006, Fs=0.007)
-    target, told = to_and_fro(0.15, turns=6)
-    angle, _resting = truly_resting(case, target, told)
-    count = 2.0 * math.pi / case.counts
-    toggling = angle + 0.3 * count * np.random.default_rng(8).standard_normal(len(angle))
-    quiet, found = (rests(case.arm(), lap(case.arm(), target, place)) for place in (angle, toggling))
-    seen = [any(one.start < other.end and one.end > other.start for one in found) for other in quiet]
-    assert len(quiet) >= 5
-    assert sum(seen) >= len(quiet) - 1
-    assert len(found) <= len(quiet) + 1
+    target, told = to_and_fro(0.15, turns=8)
+    _angle, speed, read = moved_and_read(case, target, told, jitter=0.3, seed=8)
+    found = rests(case.arm(), lap(case.arm(), target, read))
+    turns = np.arange(1, 8) * 1.0  # it rests for some 60 ms after each turn of the target
+    assert sum(any(event.start < turn + 0.07 and event.end > turn for event in found) for turn in turns) >= 6
+    for event in found:
+        within = slice(round(event.start / PERIOD), round(event.end / PERIOD))
+        assert np.median(np.abs(speed[within])) < 0.1 * np.median(np.abs(told[within]))
 
 
 def test_a_log_without_targets_moving_has_no_rests():
