@@ -21,6 +21,8 @@ _MOST_SAMPLES = 1 << 17
 _MOST_PEAKS = 8
 _PROMINENCE = 4.0
 """A peak stands out by this factor in power (6 dB) over the dips beside it."""
+_LEAST_PERIODS = 2
+"""A peak must come so often in a stretch; what comes less often is how the arm's pose changes along the path."""
 _LEAST_PEAK = 1e-3
 """Peaks below this share of the largest are not worth telling."""
 
@@ -120,6 +122,7 @@ def _peaks(
         return ()
     level = np.log(np.maximum(density, 1e-12 * density.max()))
     index, _ = find_peaks(level, prominence=np.log(_PROMINENCE), height=level.max() + np.log(_LEAST_PEAK))
+    index = index[index >= _LEAST_PERIODS]
     width = frequency[1] - frequency[0]
     dips = [0, *(int(a + np.argmin(density[a:b])) for a, b in itertools.pairwise(index)), len(density)]
     peaks = []
