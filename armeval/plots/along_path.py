@@ -7,7 +7,7 @@ from matplotlib.axes import Axes
 
 from armeval.arrays import FloatArray
 from armeval.evaluate.along_path import ErrorAlongPath
-from armeval.plots.style import Stroke, label_text
+from armeval.plots.style import BEFORE, Stroke, label_text
 
 
 def band_plot(arc: FloatArray, low: FloatArray, high: FloatArray, ax: Axes, *, stroke: Stroke, label: str = "") -> Axes:
@@ -18,7 +18,9 @@ def band_plot(arc: FloatArray, low: FloatArray, high: FloatArray, ax: Axes, *, s
     return ax
 
 
-def along_path_plot(error: ErrorAlongPath, ax: Axes, *, stroke: Stroke, label: str, band: bool = True) -> Axes:
+def along_path_plot(
+    error: ErrorAlongPath, ax: Axes, *, stroke: Stroke = BEFORE, label: str = "", band: bool = True
+) -> Axes:
     """Draw the error of one run along the path: a line for all laps, a band from the best lap to the worst.
 
     Parameters

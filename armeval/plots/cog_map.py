@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 import numpy as np
+from matplotlib.axes import Axes
 from matplotlib.projections.polar import PolarAxes
 
 from armeval.arrays import FloatArray
@@ -41,7 +42,7 @@ def cog_map_plot(cog_map: CogMap, ax: PolarAxes, *, rests: Sequence[tuple[FloatA
     return ax
 
 
-def cog_orders_plot(orders: Sequence[int], amplitudes: FloatArray, ax: PolarAxes) -> PolarAxes:
+def cog_orders_plot(orders: Sequence[int], amplitudes: FloatArray, ax: Axes) -> Axes:
     """Draw amplitudes [N m] of a map's significant orders as stems."""
     ax.vlines(list(orders), 0.0, 1e3 * amplitudes, color=INK, linewidth=1.4)
     ax.set_xlabel("order [cycles a motor turn]")

@@ -11,13 +11,13 @@ from armeval.evaluate.measure import BLIND_SPOT
 from armeval.report.answers import Answers
 from armeval.report.path_figures import predicted_interval
 from armeval.report.shown import ShownRun
-from armeval.report.verdict import interval, laps_text, millimetres
+from armeval.report.verdict import interval, laps_text, millimetres, percent
 from armeval.units import significant
 
 
 def evidence(answers: Answers, runs: Sequence[ShownRun]) -> tuple[str, ...]:
     """Give sentences on how far the numbers can be trusted."""
-    said = [_laps(runs)]
+    said = [_laps(runs), _members(runs)]
     measured = [run for run in runs if run.source == "log"]
     if measured:
         said += [f"Intervals: {METHOD}.", _alignment(measured), _resolution(answers, measured)]
@@ -37,6 +37,18 @@ def _laps(runs: Sequence[ShownRun]) -> str:
     elif min(run.laps for run in runs) < 3:
         text += " Three laps or more show better what recurs."
     return text
+
+
+def _members(runs: Sequence[ShownRun]) -> str:
+    found = runs[0].predicted.ensemble
+    if found is None:
+        return ""
+    spread = found.spreads
+    return (
+        f"Predicted ranges: {found.members} arms as they may be, drawn with seed {found.seed} from what the trial says "
+        f"under [uncertainty]: friction {percent(spread.friction)}, torque constant {percent(spread.torque_constant)}, "
+        "and the rotor's index and the map's noise, one standard deviation each."
+    )
 
 
 def _alignment(runs: Sequence[ShownRun]) -> str:

@@ -84,7 +84,12 @@ def _record(file: Path, home: Path) -> FileRecord:
 
 def _parameters(trial: Trial) -> list[tuple[str, str]]:
     found = [(name, _text(getattr(trial, name))) for name in ("feed", "acceleration", "corner_angle")]
-    for name, part in (("compensation", trial.compensation), ("sticking", trial.sticking), ("servo", trial.arm.servo)):
+    for name, part in (
+        ("compensation", trial.compensation),
+        ("sticking", trial.sticking),
+        ("uncertainty", trial.uncertainty),
+        ("servo", trial.arm.servo),
+    ):
         found.extend((f"{name}.{field.name}", _text(getattr(part, field.name))) for field in fields(part))
     found.append(("gravity", _text(trial.arm.gravity)))
     for drive in trial.arm.drives:

@@ -10,7 +10,7 @@ from matplotlib.figure import Figure
 from armeval.evaluate.along_path import ErrorAlongPath
 from armeval.evaluate.error_orders import ErrorOrders
 from armeval.plots.along_path import along_path_plot, band_plot
-from armeval.plots.cog_map import cog_map_plot
+from armeval.plots.cog_map import cog_map_plot, cog_orders_plot
 from armeval.plots.error_orders import error_orders_plot
 from armeval.plots.path import mark_stretch, path_plot
 from armeval.plots.pose import pose_plot
@@ -170,6 +170,13 @@ def test_a_cog_map_goes_once_round_with_its_rests_outside() -> None:
     assert np.abs(np.asarray(outline.get_ydata())).max() == pytest.approx(20.0)
     assert np.asarray(rests.get_xdata()) == pytest.approx([0.5, 1.5])
     assert np.asarray(rests.get_ydata()).min() > 20.0
+
+
+def test_orders_of_a_map_stand_as_stems_in_millinewton_metres(ax: Axes) -> None:
+    cog_orders_plot([12, 84], np.array([2e-3, 5e-3]), ax)
+    ends = [segment[1].tolist() for segment in ax.collections[0].get_segments()]
+    assert ends == [pytest.approx([12.0, 2.0]), pytest.approx([84.0, 5.0])]
+    assert "[mN·m]" in ax.get_ylabel()
 
 
 def test_a_spectrum_is_drawn_in_degrees_with_expected_orders_named(ax: Axes) -> None:
