@@ -98,6 +98,8 @@ def _stiffer(arm: Arm, j: int, K: float, wanted: float, inertia: float) -> str:
     steepest = _most_cogging(drive.cog_map, drive.gear_ratio)
     if steepest + drive.breakaway_friction > drive.torque_limit:
         return f"{told}, but its torque limit of {torque_text(drive.torque_limit)} is too low to pull through"
+    if most == 0.0:
+        return f"{told}, but damped as it is its loop has no phase to spare for that: damp it more first"
     if most < wanted:
         return f"{told}, but at this servo rate and delay about {significant(most, 2)} N·m/rad is the most"
     return f"{told}, which torque limit and servo rate allow"

@@ -14,6 +14,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Literal
 
 import numpy as np
@@ -184,6 +185,7 @@ class CogResidual:
         return self.rms / self.cogging_rms if self.cogging_rms > 0.0 else 0.0
 
 
+@lru_cache(maxsize=64)  # asked for at every rest, of the same few maps
 def residual(cog_map: CogMap, compensation: Compensation, *, speed: float = 0.0, delay: float = 0.0) -> CogResidual:
     """Predict what a compensation table leaves of a motor's cogging, by the closed form of each order.
 

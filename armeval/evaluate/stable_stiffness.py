@@ -9,12 +9,15 @@ import numpy as np
 PHASE_MARGIN = math.radians(30.0)
 """Phase that must be left where the loop's gain falls through 1; a usual least value (common practice)."""
 
+_SLOWEST, _FASTEST = 0.1, 10.0**4.5
+"""Frequencies [rad/s] between which the gain's fall through 1 is looked for."""
+
 
 def largest_stiffness(inertia: float, stiffness: float, damping: float, wait: float, speed_cutoff: float) -> float:
     """Largest stiffness that leaves the loop its phase margin, damping growing with the square root of the stiffness.
 
     The open loop is (K + D s / (1 + s / w_f)) e^(-s T) / (J s^2); T holds the delay and half a period, for which the
-    torque is held on average.
+    torque is held on average. Its gain falls all the way, so there is one frequency at which it is 1.
 
     Parameters
     ----------
@@ -27,19 +30,21 @@ def largest_stiffness(inertia: float, stiffness: float, damping: float, wait: fl
 
     Returns
     -------
-    In N m/rad; 0 where the loop lacks the margin even when it is a thousand times softer.
+    In N m/rad, in steps of 6 %; 0 where the loop lacks the margin even when it is a thousand times softer.
     """
-    best = 0.0
-    s = 1j * np.logspace(-1.0, 4.5, 4000)
-    for factor in np.logspace(-3.0, 3.0, 241):
-        K, D = factor * stiffness, math.sqrt(factor) * damping
-        filtered = s if math.isinf(speed_cutoff) else s / (1.0 + s / (2.0 * math.pi * speed_cutoff))
-        loop = (K + D * filtered) * np.exp(-s * wait) / (inertia * s**2)
-        last = np.flatnonzero(np.abs(loop) >= 1.0)
-        if len(last) == 0:
-            continue
-        at = slice(0, int(last[-1]) + 1)
-        phase = np.unwrap(np.angle(loop[at]))
-        if phase[-1] + math.pi >= PHASE_MARGIN:
-            best = max(best, float(K))
-    return best
+    factor = np.logspace(-3.0, 3.0, 241)
+    K, D = factor * stiffness, np.sqrt(factor) * damping
+
+    def spring(w: np.typing.NDArray[np.float64]) -> np.typing.NDArray[np.complex128]:
+        s = 1j * w
+        return np.asarray(K + D * s / (1.0 + s / (2.0 * math.pi * speed_cutoff)))
+
+    low, high = np.full_like(K, _SLOWEST), np.full_like(K, _FASTEST)
+    crosses = np.abs(spring(low)) >= inertia * low**2
+    for _ in range(50):
+        middle = np.sqrt(low * high)
+        above = np.abs(spring(middle)) >= inertia * middle**2
+        low, high = np.where(above, middle, low), np.where(above, high, middle)
+    margin = np.angle(spring(low)) - low * wait
+    enough = K[crosses & (margin >= PHASE_MARGIN)]
+    return float(enough.max()) if enough.size else 0.0
