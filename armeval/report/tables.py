@@ -236,7 +236,8 @@ def frames(
     """Give every table as a data frame in SI units, by the name of its CSV file."""
     import pandas as pd
 
-    length = answers.trajectory.length
+    length, chain = answers.trajectory.length, answers.trial.arm.chain
+    units = {joint: "m" if slides else "rad" for joint, slides in zip(chain.joints, chain.prismatic, strict=True)}
     measured = list(answers.measurement.runs) if answers.measurement is not None else []
     predicted = [run.errors for run in answers.prediction.runs]
     found = {
@@ -252,7 +253,8 @@ def frames(
                     "run": run.name,
                     "source": run.source,
                     "joint": share.joint,
-                    "error_rms_rad": share.error_rms,
+                    "error_rms": share.error_rms,
+                    "error_unit": units[share.joint],
                     "tip_error_alone_rms_m": share.tip_rms,
                     "share_of_squared_tip_error": share.share,
                 }
@@ -277,8 +279,8 @@ def frames(
     if spectra:
         found["error_orders"] = pd.concat(
             [
-                pd.DataFrame({"order": spectrum.order, "amplitude_rad": spectrum.amplitude}).assign(
-                    run=run.name, joint=joint
+                pd.DataFrame({"order": spectrum.order, "amplitude": spectrum.amplitude}).assign(
+                    unit=units[joint], run=run.name, joint=joint
                 )
                 for joint, entries in spectra.items()
                 for run, spectrum in entries

@@ -59,17 +59,18 @@ def verdict(answers: Answers, runs: Sequence[ShownRun]) -> str:
         compared.tracking_reduction_high,
     )
     told = "" if runs[0].source == "log" else "Predicted, not measured: "
+    seen = ", as the encoders see it" if runs[0].source == "log" else ""
     if not (low > 0.0 or high < 0.0):
         return (
             f"{told}RMS tracking error is {millimetres(before.rms)} mm ({names[0]}) and {millimetres(after.rms)} mm "
-            f"({names[1]}), over {laps_text(runs)}: a difference is not shown "
+            f"({names[1]}), over {laps_text(runs)}{seen}: a difference is not shown "
             f"(95 % interval of the reduction {percent(low)} to {percent(high)})."
         )
     first, last = sorted((abs(low), abs(high)))
     return (
         f"{told}RMS tracking error {'fell' if change > 0.0 else 'rose'} from {millimetres(before.rms)} mm ({names[0]}) "
         f"to {millimetres(after.rms)} mm ({names[1]}), {percent(abs(change))} {'less' if change > 0.0 else 'more'} "
-        f"(95 % interval {100.0 * first:.0f} to {percent(last)}), over {laps_text(runs)}."
+        f"(95 % interval {100.0 * first:.0f} to {percent(last)}), over {laps_text(runs)}{seen}."
     )
 
 

@@ -229,6 +229,27 @@ def test_nothing_overflows_at_390_pixels(page: webdriver.Chrome) -> None:
     assert min(sizes) >= 8.0
 
 
+def test_a_finger_moves_the_mark(page: webdriver.Chrome) -> None:
+    page.execute_cdp_cmd(
+        "Emulation.setDeviceMetricsOverride", {"width": 390, "height": 844, "deviceScaleFactor": 2, "mobile": True}
+    )
+    page.execute_cdp_cmd("Emulation.setTouchEmulationEnabled", {"enabled": True})
+    page.refresh()
+    strip = _strip(page)
+    page.execute_script("arguments[0].scrollIntoView({block: 'end'})", strip)
+    left, top, width, height = page.execute_script(
+        "const box = arguments[0].getBoundingClientRect(); return [box.left, box.top, box.width, box.height]", strip
+    )
+    places = []
+    for share in (0.4, 0.9):
+        point = {"x": left + share * width, "y": top + 0.6 * height}
+        page.execute_cdp_cmd("Input.dispatchTouchEvent", {"type": "touchStart", "touchPoints": [point]})
+        page.execute_cdp_cmd("Input.dispatchTouchEvent", {"type": "touchEnd", "touchPoints": []})
+        places.append(_place(page))
+    page.execute_cdp_cmd("Emulation.setTouchEmulationEnabled", {"enabled": False})
+    assert places[1] - places[0] > 0.4 * _length(page)
+
+
 def test_the_page_is_complete_without_script(browser: webdriver.Chrome, report: Path) -> None:
     browser.execute_cdp_cmd("Emulation.setScriptExecutionDisabled", {"value": True})
     try:

@@ -37,14 +37,14 @@ def _told(answers: Answers, before: float, after: float, low: float, high: float
 def test_an_error_that_fell_is_told_with_its_interval_and_laps(answers: Answers) -> None:
     assert _told(answers, 4.1e-3, 1.9e-3, 0.49, 0.57) == (
         "RMS tracking error fell from 4.10 mm (bare) to 1.90 mm (smoothed), 54 % less "
-        "(95 % interval 49 to 57 %), over 3 laps each."
+        "(95 % interval 49 to 57 %), over 3 laps each, as the encoders see it."
     )
 
 
 def test_an_error_that_rose_is_told_as_such(answers: Answers) -> None:
     assert _told(answers, 2e-3, 3e-3, -0.6, -0.4) == (
         "RMS tracking error rose from 2.00 mm (bare) to 3.00 mm (smoothed), 50 % more "
-        "(95 % interval 40 to 60 %), over 3 laps each."
+        "(95 % interval 40 to 60 %), over 3 laps each, as the encoders see it."
     )
 
 
