@@ -13,6 +13,9 @@ from armeval.report.answers import Answers
 from armeval.report.shown import ShownRun
 from armeval.units import significant
 
+_WORTH_NAMING = 0.05
+"""A cause with a smaller share is not named beside the largest."""
+
 
 def millimetres(metres: float) -> str:
     """Write a length in millimetres to three digits, without the unit."""
@@ -89,8 +92,10 @@ def sticking_text(answers: Answers, runs: Sequence[ShownRun]) -> str:
     if not before.regions and not after.regions:
         return "No joint sticks in either run."
     fates = Counter(pair.fate for pair in fates_of(answers, runs))
-    sentence = f"Of {_stretches(len(before.regions))} where a joint rested, {fates['gone']} are gone after compensation"
-    sentence += f" and {fates['weaker']} weaker; {fates['new']} are new."
+    sentence = (
+        f"Of {_stretches(len(before.regions))} where a joint rested, {_are(fates['gone'])} gone after compensation and "
+        f"{_are(fates['weaker'])} weaker; {_are(fates['new'])} new."
+    )
     if not before.regions:
         sentence = (
             f"No joint rested in {runs[0].name}, but {runs[1].name} has {_stretches(len(after.regions))} of rest."
@@ -99,13 +104,17 @@ def sticking_text(answers: Answers, runs: Sequence[ShownRun]) -> str:
         return sentence
     joint, of_joint = Counter(region.joint for region in after.regions).most_common(1)[0]
     cause, of_cause = Counter(region.cause for region in after.regions).most_common(1)[0]
-    sentence += f" Of the {len(after.regions)} left, {of_joint} are in {joint}; "
+    sentence += f" Of the {len(after.regions)} left, {_are(of_joint)} in {joint}; "
     if cause == "unexplained":
         return f"{sentence}the cause of {of_cause} is not shown."
-    return f"{sentence}{of_cause} are put down to {_CAUSES.get(cause, cause)}."
+    return f"{sentence}{_are(of_cause)} put down to {_CAUSES.get(cause, cause)}."
 
 
 _CAUSES = {"torque limit": "the torque limit", "joint limit": "a joint limit"}
+
+
+def _are(count: int) -> str:
+    return f"{count or 'none'} {'are' if count > 1 else 'is'}"
 
 
 def _stretches(count: int) -> str:
@@ -164,15 +173,17 @@ def worst_text(run: ShownRun) -> str:
 
 
 def why_text(answers: Answers, runs: Sequence[ShownRun]) -> str:
-    """Say which cause has the largest part of the predicted error in each shown run."""
-    parts = []
+    """Say which causes have the largest parts of the predicted error in each shown run."""
+    told = []
     for run in runs:
         state = answers.budget.run(run.name)
-        worst = max(state.causes, key=lambda cause: cause.part.tracking)
-        if state.whole.tracking > 0.0 and worst.part.tracking > 0.0:
-            parts.append(
-                f"{worst.cause} accounts for {percent(worst.part.tracking / state.whole.tracking)} of the squared "
-                f"tracking error in {run.name}"
-            )
-    told = "; ".join(parts)
-    return f"By the prediction, {told}." if told else "The prediction has no error to share out."
+        if not state.whole.tracking > 0.0:
+            continue
+        shares = sorted(
+            ((cause.part.tracking / state.whole.tracking, cause.cause) for cause in state.causes), reverse=True
+        )
+        named = ", ".join(f"{cause} {percent(share)}" for share, cause in shares[:2] if share > _WORTH_NAMING)
+        told.append(f"{named} in {run.name}")
+    if not told:
+        return "The prediction has no error to share out."
+    return f"Of the squared tracking error, by the prediction: {'; '.join(told)}."

@@ -13,7 +13,7 @@ from armeval.report.answers import Answers
 from armeval.report.merit import merits
 from armeval.report.next_steps import next_steps
 from armeval.report.shown import ShownRun, shown_runs
-from armeval.report.verdict import blame_text, sticking_text, verdict, worst_text
+from armeval.report.verdict import blame_text, sticking_text, verdict, why_text, worst_text
 
 
 def _run(run: RunErrors, name: str, rms: float) -> RunErrors:
@@ -71,8 +71,12 @@ def test_what_became_of_the_regions_adds_up(answers: Answers) -> None:
     new = sum(pair.fate == "new" for pair in pairs)
     assert before - gone + new == after
     assert f"Of {before} stretches" in told
-    assert f"{gone} are gone" in told
-    assert f"{new} are new" in told
+    assert f"{_are(gone)} gone" in told
+    assert f"{_are(new)} new" in told
+
+
+def _are(count: int) -> str:
+    return {0: "none is", 1: "1 is"}.get(count, f"{count} are")
 
 
 def _shares(*parts: float) -> tuple[JointShare, ...]:
@@ -114,3 +118,11 @@ def test_steps_are_ranked_by_what_is_at_stake(answers: Answers) -> None:
         at_stake[key] = at_stake.get(key, 0.0) + region.harm
     first = max(at_stake, key=lambda key: at_stake[key])
     assert steps[0].about.startswith(f"{first[0]}, {first[1]} (")
+
+
+def test_the_largest_causes_are_named_with_their_shares(answers: Answers) -> None:
+    told = why_text(answers, shown_runs(answers))
+    for state in answers.budget.budgets:
+        worst = max(state.causes, key=lambda cause: cause.part.tracking)
+        assert f"{worst.cause} {100 * worst.part.tracking / state.whole.tracking:.0f} %" in told
+        assert f"in {state.label}" in told
