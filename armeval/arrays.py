@@ -41,6 +41,17 @@ def frozen(values: npt.ArrayLike, shape: tuple[int | None, ...], name: str) -> F
     return array
 
 
+def read_only(values: FloatArray) -> FloatArray:
+    """Give a read-only contiguous view, or a copy where there is no such view.
+
+    Kernels are compiled anew for every mix of arrays that may and that may not be written, so what they only read is
+    handed to them like this.
+    """
+    view = np.ascontiguousarray(values, dtype=np.float64).view()
+    view.setflags(write=False)
+    return view
+
+
 def _is_finite(array: FloatArray) -> bool:
     """Whether all numbers are finite: their sum tells in one pass over a long log; where it overflows, each of them."""
     with np.errstate(over="ignore", invalid="ignore"):

@@ -10,7 +10,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from armeval.arrays import BoolArray, FloatArray
+from armeval.arrays import BoolArray, FloatArray, read_only
 from armeval.kernels.compile import jit
 
 
@@ -97,12 +97,8 @@ def tip_jacobian(chain: ChainArrays, rotation: FloatArray, origin: FloatArray, t
             J[2, i] = ax * dy - ay * dx
 
 
-@jit
 def tip_positions(chain: ChainArrays, q: FloatArray) -> FloatArray:
     """Tip positions of many poses.
-
-    The tip alone is carried from frame to frame, from the last joint to the base: no joint frame is built, so that
-    millions of logged poses cost a few dozen nanoseconds each.
 
     Parameters
     ----------
@@ -115,8 +111,19 @@ def tip_positions(chain: ChainArrays, q: FloatArray) -> FloatArray:
     -------
     Shape (k, 3) [m] in the base frame.
     """
+    tips = np.empty((len(q), 3))
+    _place_tips(chain, read_only(q), tips)
+    return tips
+
+
+@jit
+def _place_tips(chain: ChainArrays, q: FloatArray, tips: FloatArray) -> None:
+    """Fill in the tips.
+
+    The tip alone is carried from frame to frame, from the last joint to the base: no joint frame is built, so that
+    millions of logged poses cost a few dozen nanoseconds each.
+    """
     k, n = q.shape
-    tips = np.empty((k, 3))
     P = chain.placement
     for j in range(k):
         x, y, z = chain.tip[0], chain.tip[1], chain.tip[2]
@@ -132,14 +139,18 @@ def tip_positions(chain: ChainArrays, q: FloatArray) -> FloatArray:
                 P[i, 2, 0] * x + P[i, 2, 1] * y + P[i, 2, 2] * z + P[i, 2, 3],
             )
         tips[j, 0], tips[j, 1], tips[j, 2] = x, y, z
-    return tips
+
+
+def tip_jacobians(chain: ChainArrays, q: FloatArray) -> FloatArray:
+    """Jacobians of the tip's position in many poses: q of shape (k, n) gives (k, 3, n)."""
+    jacobians = np.empty((len(q), 3, q.shape[1]))
+    _fill_jacobians(chain, read_only(q), jacobians)
+    return jacobians
 
 
 @jit
-def tip_jacobians(chain: ChainArrays, q: FloatArray) -> FloatArray:
-    """Jacobians of the tip's position in many poses: q of shape (k, n) gives (k, 3, n)."""
+def _fill_jacobians(chain: ChainArrays, q: FloatArray, jacobians: FloatArray) -> None:
     k, n = q.shape
-    jacobians = np.empty((k, 3, n))
     rotation = np.empty((n, 3, 3))
     origin = np.empty((n, 3))
     tip = np.empty(3)
@@ -147,16 +158,15 @@ def tip_jacobians(chain: ChainArrays, q: FloatArray) -> FloatArray:
         joint_frames(chain, q[j], rotation, origin)
         tip_position(chain, rotation, origin, tip)
         tip_jacobian(chain, rotation, origin, tip, jacobians[j])
-    return jacobians
 
 
-@jit
 def skeletons(chain: ChainArrays, q: FloatArray) -> FloatArray:
     """Points to draw the arm through: base, joint origins, tip; q of shape (k, n) gives (k, n + 2, 3) [m]."""
     k, n = q.shape
     points = np.zeros((k, n + 2, 3))
-    rotation = np.empty((n, 3, 3))
-    for j in range(k):
-        joint_frames(chain, q[j], rotation, points[j, 1 : n + 1])
-        tip_position(chain, rotation, points[j, 1 : n + 1], points[j, n + 1])
+    for i in range(n):
+        # A joint's origin is the tip of the chain that ends there.
+        upto = ChainArrays._make(values[: i + 1] for values in chain)._replace(tip=read_only(np.zeros(3)))
+        points[:, i + 1] = tip_positions(upto, q[:, : i + 1])
+    points[:, n + 1] = tip_positions(chain, q)
     return points

@@ -8,14 +8,14 @@ from __future__ import annotations
 
 import numpy as np
 
-from armeval.arrays import FloatArray
-from armeval.kernels.compile import jit
+from armeval.arrays import FloatArray, read_only
+from armeval.kernels.compile import jit, jit_part
 
 _TIE = 1e-9
 """Distances [m] that differ by less are equal: where a path runs back over itself, rounding must not decide."""
 
 
-@jit
+@jit_part
 def _segment_at(arc: FloatArray, s: float, guess: int) -> int:
     """Segment that holds arc length s, walked to from a guess."""
     last = arc.shape[0] - 2
@@ -27,7 +27,7 @@ def _segment_at(arc: FloatArray, s: float, guess: int) -> int:
     return i
 
 
-@jit
+@jit_part
 def _nearest_on_segment(
     path: FloatArray, arc: FloatArray, i: int, low: float, high: float, point: FloatArray
 ) -> tuple[float, float]:
@@ -45,7 +45,6 @@ def _nearest_on_segment(
     return np.sqrt(square), s
 
 
-@jit
 def nearest_near(
     points: FloatArray, expected: FloatArray, window: FloatArray, path: FloatArray, arc: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
@@ -67,9 +66,23 @@ def nearest_near(
     distance, arc
         Shape (k,) each [m]. Of equally near points, the one nearest to the expected arc length.
     """
+    distance, found = np.empty(len(points)), np.empty(len(points))
+    points, expected, window = read_only(points), read_only(expected), read_only(window)
+    _nearest_near(points, expected, window, read_only(path), read_only(arc), distance, found)
+    return distance, found
+
+
+@jit
+def _nearest_near(
+    points: FloatArray,
+    expected: FloatArray,
+    window: FloatArray,
+    path: FloatArray,
+    arc: FloatArray,
+    distance: FloatArray,
+    found: FloatArray,
+) -> None:
     k, last = points.shape[0], arc.shape[0] - 2
-    distance = np.empty(k)
-    found = np.empty(k)
     begin = guess = 0
     lag = 0.0
     for j in range(k):
@@ -95,26 +108,16 @@ def nearest_near(
             unseen = arc[i + 1] + (d - best) - _TIE
         lag = middle - best_s
         distance[j], found[j] = best, best_s
-    return distance, found
 
 
-@jit
 def distances_at(points: FloatArray, expected: FloatArray, path: FloatArray, arc: FloatArray) -> FloatArray:
     """Distance of each point (k, 3) from the polyline's point at its expected arc length (k,) [m]."""
-    k = points.shape[0]
-    distance = np.empty(k)
-    i = 0
-    for j in range(k):
-        i = _segment_at(arc, expected[j], i)
-        share = min(max((expected[j] - arc[i]) / (arc[i + 1] - arc[i]), 0.0), 1.0)
-        square = 0.0
-        for r in range(3):
-            square += (points[j, r] - path[i, r] - share * (path[i + 1, r] - path[i, r])) ** 2
-        distance[j] = np.sqrt(square)
-    return distance
+    square = np.zeros(len(points))
+    for r in range(3):
+        square += (points[:, r] - np.interp(expected, arc, path[:, r])) ** 2
+    return np.asarray(np.sqrt(square))
 
 
-@jit
 def progress(points: FloatArray, path: FloatArray, arc: FloatArray, start: float) -> FloatArray:
     """Arc length of a row of points that move along the polyline and never back.
 
@@ -135,8 +138,14 @@ def progress(points: FloatArray, path: FloatArray, arc: FloatArray, start: float
     -------
     Shape (k,) [m], never falling.
     """
+    found = np.empty(len(points))
+    _progress(read_only(points), read_only(path), read_only(arc), start, found)
+    return found
+
+
+@jit
+def _progress(points: FloatArray, path: FloatArray, arc: FloatArray, start: float, found: FloatArray) -> None:
     k, last = points.shape[0], arc.shape[0] - 2
-    found = np.empty(k)
     s = start
     segment = 0
     before = 0.0
@@ -165,4 +174,3 @@ def progress(points: FloatArray, path: FloatArray, arc: FloatArray, start: float
         missed = best
         before = way
         found[j] = s
-    return found

@@ -17,8 +17,8 @@ from typing import NamedTuple
 
 import numpy as np
 
-from armeval.arrays import FloatArray, IntArray
-from armeval.kernels.compile import jit
+from armeval.arrays import FloatArray, IntArray, read_only
+from armeval.kernels.compile import jit, jit_part
 from armeval.kernels.periodic import periodic_slope, periodic_value
 
 _MOST_STEPS = 1e6
@@ -56,7 +56,7 @@ class DraggedJoint(NamedTuple):
     table: FloatArray
 
 
-@jit
+@jit_part
 def _needed(joint: DraggedJoint, s: float, d: float, friction: float, load: float) -> float:
     """Target at which the joint at q = d s is just about to slide, times the direction d."""
     torque = joint.gear * periodic_value(joint.table, joint.gear * d * s + joint.index_offset) + load
@@ -64,7 +64,7 @@ def _needed(joint: DraggedJoint, s: float, d: float, friction: float, load: floa
     return needed
 
 
-@jit
+@jit_part
 def _follows(joint: DraggedJoint, s: float, d: float) -> bool:
     """Whether the joint at q = d s moves on as its target does."""
     slope = joint.gear * joint.gear * periodic_slope(joint.table, joint.gear * d * s + joint.index_offset)
@@ -72,7 +72,7 @@ def _follows(joint: DraggedJoint, s: float, d: float) -> bool:
     return follows
 
 
-@jit
+@jit_part
 def _fold_between(joint: DraggedJoint, low: float, high: float, d: float) -> float:
     """Where the joint stops following: it does at low, it does not at high."""
     middle = 0.5 * (low + high)
@@ -85,7 +85,7 @@ def _fold_between(joint: DraggedJoint, low: float, high: float, d: float) -> flo
     return high
 
 
-@jit
+@jit_part
 def _place_between(
     joint: DraggedJoint, low: float, high: float, goal: float, d: float, friction: float, load: float
 ) -> float:
@@ -110,7 +110,7 @@ def _place_between(
     return high
 
 
-@jit
+@jit_part
 def _end_of_jump(
     joint: DraggedJoint, start: float, goal: float, d: float, friction: float, load: float, step: float
 ) -> float:
@@ -126,7 +126,6 @@ def _end_of_jump(
     return _place_between(joint, low, high, goal, d, friction, load)
 
 
-@jit
 def follow_target(
     joint: DraggedJoint, target: FloatArray, load: FloatArray, start: float, step: float, least_jump: float
 ) -> tuple[FloatArray, IntArray, FloatArray]:
@@ -156,9 +155,31 @@ def follow_target(
     jump
         Shape (j, 2) [rad]. Angles before and after each jump.
     """
+    angle, most = np.empty(len(target)), 64
+    joint = joint._replace(table=read_only(joint.table))
+    while True:
+        sample, jump = np.empty(most, np.int64), np.empty((most, 2))
+        jumps = _follow_target(joint, read_only(target), read_only(load), start, step, least_jump, angle, sample, jump)
+        if jumps <= most:
+            return angle, sample[:jumps], jump[:jumps]
+        most = jumps
+
+
+@jit
+def _follow_target(
+    joint: DraggedJoint,
+    target: FloatArray,
+    load: FloatArray,
+    start: float,
+    step: float,
+    least_jump: float,
+    angle: FloatArray,
+    sample: IntArray,
+    jump: FloatArray,
+) -> int:
+    """Fill in the angles, and the jumps as far as there is room; give the number of all jumps."""
     k = target.shape[0]
-    angle = np.empty(k)
-    sample, jump, jumps = np.empty(64, np.int64), np.empty((64, 2)), 0
+    jumps = 0
     slides = joint.static - joint.coulomb <= _FINEST_SLIP * joint.stiffness * step
     q = start
     for i in range(k):
@@ -180,14 +201,12 @@ def follow_target(
                 friction = joint.static if slides else joint.coulomb
                 end = _end_of_jump(joint, s, at, d, friction, load[i], step)
                 if end - s > least_jump:
-                    if jumps == sample.shape[0]:
-                        sample = np.concatenate((sample, sample))
-                        jump = np.concatenate((jump, jump))
-                    sample[jumps] = i
-                    jump[jumps, 0], jump[jumps, 1] = d * s, d * end
+                    if jumps < sample.shape[0]:
+                        sample[jumps] = i
+                        jump[jumps, 0], jump[jumps, 1] = d * s, d * end
                     jumps += 1
                 s = end
             at = _needed(joint, s, d, joint.static, load[i])
         q = d * min(s, last)
         angle[i] = q
-    return angle, sample[:jumps].copy(), jump[:jumps].copy()
+    return jumps

@@ -142,6 +142,7 @@ def corner_passes(
     inner, last = len(corners) - 2, len(path_arc) - 2
     rounding = np.full(inner, np.nan)
     overshoot = np.full(inner, np.nan)
+    corner = np.empty(3)
     j, segment = 0, 0
     for c in range(inner):
         s = corners[c + 1]
@@ -149,7 +150,9 @@ def corner_passes(
         at = segment
         while at < last and s >= path_arc[at + 1]:
             at += 1
-        corner = path[at] + (s - path_arc[at]) / (path_arc[at + 1] - path_arc[at]) * (path[at + 1] - path[at])
+        share = (s - path_arc[at]) / (path_arc[at + 1] - path_arc[at])
+        for r in range(3):
+            corner[r] = path[at, r] + share * (path[at + 1, r] - path[at, r])
         segment = at
         while j < len(arc) and arc[j] < low:
             j += 1
