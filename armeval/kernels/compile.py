@@ -44,9 +44,14 @@ def jit(function: Callable[P, R]) -> Callable[P, R]:
 
 
 def jit_inline(function: Callable[P, R]) -> Callable[P, R]:
-    """Compile a part of a kernel into whatever kernel calls it, so that what is constant there is constant here too."""
+    """Compile a part into whatever kernel calls it, so that what is constant there is constant here too.
+
+    It cannot be called from Python.
+    """
     options = {"error_model": "numpy", "nogil": True, "fastmath": {"contract"}}
-    compiled: Callable[P, R] = numba.njit(forceinline=True, **options)(function)
+    compiled: Callable[P, R] = numba.njit(forceinline=True, no_cpython_wrapper=True, no_cfunc_wrapper=True, **options)(
+        function
+    )
     return compiled
 
 

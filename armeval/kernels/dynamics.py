@@ -11,11 +11,11 @@ from __future__ import annotations
 
 import numpy as np
 
-from armeval.arrays import FloatArray
+from armeval.arrays import FloatArray, read_only
 from armeval.kernels.chain import ChainArrays
 from armeval.kernels.compile import jit, jit_inline
 from armeval.kernels.elementary import sine_cosine
-from armeval.kernels.records import Records, joint_count, joint_records
+from armeval.kernels.records import Records, joint_count, joint_records, servo_record
 
 
 @jit_inline
@@ -184,10 +184,13 @@ def _weigh(joint: Records) -> None:
 
 @jit
 def evaluate_poses(
-    joints: Records, free_fall: FloatArray, q: FloatArray, v: FloatArray, M: FloatArray, h: FloatArray, g: FloatArray
+    joints: Records, servo_records: Records, q: FloatArray, v: FloatArray, M: FloatArray, h: FloatArray, g: FloatArray
 ) -> None:
-    """Fill in M (k, n, n), h (k, n) and the gravity torque g (k, n) for poses q and speeds v (k, n); one lane."""
-    n = joint_count(joints)
+    """Fill in M (k, n, n), h (k, n) and the gravity torque g (k, n) for poses q and speeds v (k, n); one lane.
+
+    Gravity comes in the servo's record: from there the replay takes it, and the equations are compiled once.
+    """
+    n, free_fall = joint_count(joints), servo_records[0]["free_fall"]
     for s in range(q.shape[0]):
         for i in range(n):
             joints[i]["at"] = q[s, i]
@@ -224,5 +227,7 @@ def mass_matrix_and_bias(
     """
     k, n = q.shape
     M, h, g = np.empty((k, n, n)), np.empty((k, n)), np.empty((k, n))
-    evaluate_poses(joint_records(chain), gravity, q, v, M, h, g)
+    servo = servo_record()
+    servo["free_fall"] = gravity
+    evaluate_poses(joint_records(chain), servo, read_only(q), read_only(v), M, h, g)
     return M, h, g
