@@ -118,7 +118,7 @@ def _missed(cog_map: CogMap, compensation: Compensation) -> str:
     }
     saved = {name: whole.rms**2 - residual(cog_map, better).rms ** 2 for name, better in without.items()}
     worst = max(saved, key=lambda name: saved[name])
-    return f"the table should leave {whole.share:.0%} of the cogging, most of that through {worst}"
+    return f"the table should leave {100.0 * whole.share:.0f} % of the cogging, most of that through {worst}"
 
 
 def _most_cogging(cog_map: CogMap | None, gear_ratio: float) -> float:

@@ -21,6 +21,7 @@ from armeval.evaluate.cause_routes import (
     torque_route,
 )
 from armeval.evaluate.joint_in_log import friction_alone, joint_stiffness_along
+from armeval.evaluate.jumps import cog_pitch
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.periodicity import Periodicity, periodicity
 from armeval.evaluate.regions import same_places
@@ -141,6 +142,7 @@ def _replayed(
             asked[joint, removed] = sticking_events(arm, counterfactual(joint, removed), rule)
         return asked[joint, removed]
 
+    pitch = {drive.joint: cog_pitch(drive) for drive in arm.drives}
     found = []
     for event in events:
         limit = next(route.says for route in event.routes if route.name == "limits")
@@ -150,7 +152,9 @@ def _replayed(
         routes = list(event.routes)
         cause: CauseName = "unexplained"
         for removed in order:
-            route = counterfactual_route(event, removed, without(event.joint, removed))
+            # Only cogging holds a rest to its angle; without friction or a limit the joint may drift along its cog.
+            place = pitch[event.joint] if removed == "cogging" else None
+            route = counterfactual_route(event, removed, without(event.joint, removed), place)
             routes.append(route)
             if route.says != "not shown":
                 cause = removed

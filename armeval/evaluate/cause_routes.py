@@ -14,13 +14,16 @@ from armeval.evaluate.sticking_event import CauseName, Route, StickingEvent
 from armeval.model.arm import Arm
 from armeval.model.drive import Drive
 from armeval.model.trial import Compensation
-from armeval.units import angle_text, torque_text
+from armeval.units import angle_text, significant, torque_text
 
 NEAR_LIMIT = np.radians(0.2)
 """A joint this near to the end of its range rests against it [rad or m]."""
 
 HELD_SHARE = 0.4
 """Share of a rest from which friction alone is taken for its cause; friction itself is known to a quarter at best."""
+
+_SAME_PLACE = 0.2
+"""Share of a cog pitch within which a rest is still at the same place when a cause is taken out."""
 
 BRAKING_RATIO = 0.4
 """Sticking ratio above which cogging, too gentle to make a joint stick by itself, slows it markedly in each pitch."""
@@ -41,7 +44,9 @@ def limits_route(arm: Arm, track: LapTrack, event: StickingEvent) -> Route:
         applied = np.abs(track.torque[rows, j])
         cut = float(np.mean(applied >= limit - arm.drives[j].torque_step - 1e-9 * limit)) if applied.size else 0.0
         if cut >= 0.5:
-            return Route("limits", "torque limit", f"the torque stands at its limit for {cut:.0%} of the rest")
+            return Route(
+                "limits", "torque limit", f"the torque stands at its limit for {100.0 * cut:.0f} % of the rest"
+            )
         most = float(applied.max()) if applied.size else 0.0
     else:
         most = max(abs(event.pull_start), abs(event.pull_end))
@@ -68,7 +73,7 @@ def torque_route(drive: Drive, event: StickingEvent, held_share: float) -> Route
     if drive.breakaway_friction == 0.0:
         return Route("torque", "not shown", "friction is not known: give `coulomb_friction`, or map both directions")
     built = torque_text(event.pull_end - event.pull_start, 2)
-    told = f"{built} built up; friction alone would hold the joint for {held_share:.0%} of this time"
+    told = f"{built} built up; friction alone would hold the joint for {100.0 * held_share:.0f} % of this time"
     return Route("torque", "friction" if held_share >= HELD_SHARE else "not shown", told)
 
 
@@ -110,7 +115,7 @@ def map_route(drive: Drive, event: StickingEvent, ratio: float, friction_holds: 
     if drive.cog_map is None:
         return Route("map", "not shown", f"no cog map of {event.joint}: measure one")
     what = "what the table may leave of the cogging" if compensated else "cogging"
-    told = f"within half a pitch {what} rises {ratio:.2g} times as steeply as the servo's torque falls"
+    told = f"within half a pitch {what} rises {significant(ratio)} times as steeply as the servo's torque falls"
     if ratio > 1.0:
         return Route("map", "cogging", told)
     if ratio > BRAKING_RATIO and not friction_holds:
@@ -118,13 +123,36 @@ def map_route(drive: Drive, event: StickingEvent, ratio: float, friction_holds: 
     return Route("map", "not shown", told)
 
 
-def counterfactual_route(event: StickingEvent, removed: CauseName, without: Sequence[StickingEvent]) -> Route:
+def counterfactual_route(
+    event: StickingEvent, removed: CauseName, without: Sequence[StickingEvent], pitch: float | None
+) -> Route:
     """Ask a replay without one cause whether the rest is still there.
 
-    It is there still when the joint rests for at least half of the time while its target is on the same stretch.
+    It is there still when the joint rests at the same angle for at least half of the time. Where cogging is taken out,
+    a rest that is found further than a fifth of a cog pitch away was held there by the cogging: it moved away.
+
+    Parameters
+    ----------
+    event, removed
+        The rest, and the cause that was taken out.
+    without
+        All rests of the replay without it.
+    pitch
+        The joint's cog pitch [rad or m]; None where it has none.
     """
     same = [other for other in without if other.joint == event.joint and other.kind == "rest"]
-    shared = sum(max(0.0, min(other.end, event.end) - max(other.start, event.start)) for other in same)
-    if shared >= 0.5 * event.dwell:
+    near = [
+        other for other in same if pitch is None or abs(other.joint_angle - event.joint_angle) <= _SAME_PLACE * pitch
+    ]
+    if _shared(event, near) >= 0.5 * event.dwell:
         return Route("counterfactual", "not shown", f"without {removed} it still rests here")
+    if _shared(event, same) >= 0.5 * event.dwell:
+        other = max(same, key=lambda other: _shared(event, [other]))
+        moved = angle_text(abs(other.joint_angle - event.joint_angle), 2)
+        return Route("counterfactual", removed, f"without {removed} it rests {moved} away from here")
     return Route("counterfactual", removed, f"without {removed} it does not rest here")
+
+
+def _shared(event: StickingEvent, others: Sequence[StickingEvent]) -> float:
+    """Time [s] that an event shares with others."""
+    return sum(max(0.0, min(other.end, event.end) - max(other.start, event.start)) for other in others)

@@ -2,18 +2,21 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Literal
 
 from armeval.errors import InputError
 from armeval.evaluate.action import action
+from armeval.evaluate.carried_through import CarriedThrough, carried_through
 from armeval.evaluate.cause import Counterfactual, find_causes
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.regions import Counterpart, Region, counterparts, regions
 from armeval.evaluate.rests import sticking_events
 from armeval.evaluate.sticking_event import StickingEvent
+from armeval.evaluate.sticking_ratio import StickingRatio
 from armeval.model.arm import Arm
 from armeval.model.trial import Compensation, StickingRule
 from armeval.units import angle_text, length_text, time_text
@@ -38,6 +41,8 @@ class RunSticking:
         Every sudden motion without a rest before it (a skipped cog).
     regions
         Where rests recur, the most harmful first.
+    carried
+        For a prediction with its sticking ratio: joint by joint, where the two disagree.
     """
 
     name: str
@@ -47,6 +52,7 @@ class RunSticking:
     events: tuple[StickingEvent, ...]
     jumps: tuple[StickingEvent, ...]
     regions: tuple[Region, ...]
+    carried: tuple[CarriedThrough, ...] = ()
 
     def to_document(self) -> dict[str, JsonValue]:
         """Give the run's entry in the JSON document."""
@@ -58,6 +64,7 @@ class RunSticking:
             "events": [event.to_document() for event in self.events],
             "jumps": [event.to_document() for event in self.jumps],
             "regions": [region.to_document() for region in self.regions],
+            **({"carried_through": [joint.to_document() for joint in self.carried]} if self.carried else {}),
         }
 
 
@@ -178,6 +185,7 @@ def locate(
     rule: StickingRule | None = None,
     compensation: Compensation | None = None,
     counterfactuals: Mapping[str, Counterfactual] | None = None,
+    ratios: Mapping[str, StickingRatio] | None = None,
     trial: str = "",
     warnings: Sequence[str] = (),
 ) -> Location:
@@ -195,6 +203,8 @@ def locate(
         What the firmware's table can do; needed to say what it leaves in compensated runs.
     counterfactuals
         By the name of the run: replays of that run with a cause taken out, for predicted laps.
+    ratios
+        By the name of the run: its sticking ratio along the samples of its predicted lap.
     trial
         Title for the document.
     warnings
@@ -229,7 +239,9 @@ def locate(
             for region in regions(laps, rests)
         )
         jumps = tuple(event for event in found if event.kind == "jump")
-        runs.append(RunSticking(first.run, first.compensated, first.source, len(laps), rests, jumps, merged))
+        ratio = (ratios or {}).get(first.run) if first.source == "prediction" else None
+        carried = carried_through(arm, first, ratio, found, rule) if ratio is not None else ()
+        runs.append(RunSticking(first.run, first.compensated, first.source, len(laps), rests, jumps, merged, carried))
     return Location(tuple(runs), _matchings(runs), trial, tuple(warnings))
 
 
@@ -258,10 +270,13 @@ def _behind(lag: float) -> str:
 def _run_text(run: RunSticking, most: int) -> str:
     how = "measured" if run.source == "log" else "predicted"
     state = "compensated" if run.compensated else "bare"
+    name = f"{run.name} ({state}, {how}, {run.laps} lap{'' if run.laps == 1 else 's'})"
+    carried = [f"     {joint.text}" for joint in run.carried if joint.text]
     if not run.regions:
-        return f"{run.name} ({state}, {how}, {run.laps} laps): no joint sticks."
-    head = f"{run.name} ({state}, {how}, {run.laps} laps): {len(run.regions)} regions, the most harmful first"
+        return "\n".join((f"{name}: no joint sticks.", *carried))
+    head = f"{name}: {len(run.regions)} region{'' if len(run.regions) == 1 else 's'}, the most harmful first"
     lines = [head]
+    said: dict[str, int] = {}
     for rank, region in enumerate(run.regions[:most], start=1):
         lines.append(
             f"{rank:3d}. {region.joint} at {length_text(region.start_arc, 4)} to {length_text(region.end_arc, 4)}: "
@@ -271,7 +286,18 @@ def _run_text(run: RunSticking, most: int) -> str:
             f"{100.0 * region.harm:.1f} % of the squared error"
         )
         if region.action:
-            lines.append(f"     {region.action}")
+            lines.append(f"     {_unless_said(region.action, rank, said)}")
     if len(run.regions) > most:
         lines.append(f"     and {len(run.regions) - most} more")
-    return "\n".join(lines)
+    return "\n".join((*lines, *carried))
+
+
+def _unless_said(text: str, rank: int, said: dict[str, int]) -> str:
+    """Point to the region where a sentence stands already, and note the new ones."""
+    new = []
+    for sentence in re.split(r"(?<=\.) (?=[A-Z])", text):
+        where = said.setdefault(sentence, rank)
+        told = sentence if where == rank else f"As for {where}."
+        if told not in new:
+            new.append(told)
+    return " ".join(new)

@@ -36,6 +36,7 @@ def locate_trial(trial: Trial, measurement: Measurement | None, prediction: Pred
         rule=trial.sticking,
         compensation=trial.compensation,
         counterfactuals=prediction.counterfactuals if prediction is not None else None,
+        ratios={run.name: run.ratio for run in prediction.runs} if prediction is not None else None,
         trial=trial.title,
         warnings=_warnings(measurement, prediction),
     )
