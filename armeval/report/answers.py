@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 
 from armeval.errors import InputError
@@ -93,10 +94,15 @@ def answer(
         If the path cannot be followed, a log cannot be used, or there is no run of a given name.
     """
     plan = plan_trial(trial)
-    measurement = measure(trial, trajectory=plan, progress=progress) if has_logs(trial) else None
-    prediction = predict(trial, trajectory=plan, members=MEMBERS, progress=progress)
-    location = locate_trial(trial, measurement, prediction)
-    shares = budget(trial, trajectory=plan, progress=progress)
+    with ThreadPoolExecutor(1) as beside:
+        # Kernels work on the budget while the search for rests, which is not theirs, takes its time.
+        waiting = beside.submit(budget, trial, trajectory=plan)
+        measurement = measure(trial, trajectory=plan, progress=progress) if has_logs(trial) else None
+        prediction = predict(trial, trajectory=plan, members=MEMBERS, progress=progress)
+        progress("finding where it sticks", 0, 1)
+        location = locate_trial(trial, measurement, prediction)
+        progress("finding where it sticks", 1, 1)
+        shares = waiting.result()
     first = _chosen(trial, before, compensated=False)
     second = _chosen(trial, after, compensated=True)
     if first is not None and first == second:
