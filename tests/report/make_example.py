@@ -5,6 +5,7 @@ python -m tests.report.make_example
 
 from __future__ import annotations
 
+import contextlib
 import shutil
 import tempfile
 from datetime import datetime
@@ -20,12 +21,15 @@ KEPT = ("report.html", "report.md", "results.json")
 
 
 def make_example(folder: Path, written: datetime | None = None) -> Path:
-    """Write the demo and its report below a folder; give the report's folder."""
-    trial = read_trial(write_demo(folder / "harbour-demo"))
-    command = "armeval demo harbour-demo"
-    out = folder / "report"
-    write_report(trial, out, formats=("html", "md"), command=command, written=written)
-    return out
+    """Write the demo and its report below a folder; give the report's folder.
+
+    Files are named as a person in that folder would name them, so that the report is the same wherever it is made.
+    """
+    with contextlib.chdir(folder):
+        trial = read_trial(write_demo("harbour-demo"))
+        command = "armeval demo harbour-demo"
+        write_report(trial, "report", formats=("html", "md"), command=command, written=written)
+    return folder / "report"
 
 
 if __name__ == "__main__":

@@ -46,6 +46,12 @@ def test_the_example_is_there() -> None:
     assert {file.name for file in EXAMPLE.iterdir()} == set(KEPT)
 
 
+def test_it_names_no_place_on_the_machine_that_made_it() -> None:
+    files = [lap["file"] for run in _document(EXAMPLE)["measure"]["runs"] for lap in run["laps"]]
+    assert files
+    assert not any(Path(file).is_absolute() for file in files)
+
+
 def test_its_page_is_small() -> None:
     assert (EXAMPLE / "report.html").stat().st_size < 2_000_000
 
