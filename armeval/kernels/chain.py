@@ -11,7 +11,7 @@ from typing import NamedTuple
 import numpy as np
 
 from armeval.arrays import BoolArray, FloatArray, read_only
-from armeval.kernels.compile import jit
+from armeval.kernels.compile import jit, jit_part
 
 
 class ChainArrays(NamedTuple):
@@ -78,7 +78,7 @@ def tip_position(chain: ChainArrays, rotation: FloatArray, origin: FloatArray, t
         )
 
 
-@jit
+@jit_part
 def tip_jacobian(chain: ChainArrays, rotation: FloatArray, origin: FloatArray, tip: FloatArray, J: FloatArray) -> None:
     """Fill in the Jacobian of the tip's position, shape (3, n) [m/rad, or 1 where the joint slides].
 
@@ -142,22 +142,14 @@ def _place_tips(chain: ChainArrays, q: FloatArray, tips: FloatArray) -> None:
 
 
 def tip_jacobians(chain: ChainArrays, q: FloatArray) -> FloatArray:
-    """Jacobians of the tip's position in many poses: q of shape (k, n) gives (k, 3, n)."""
+    """Jacobians of the tip's position in many poses: q of shape (k, n) gives (k, 3, n); see :func:`tip_jacobian`."""
+    tips = tip_positions(chain, q)
     jacobians = np.empty((len(q), 3, q.shape[1]))
-    _fill_jacobians(chain, read_only(q), jacobians)
+    for i in range(q.shape[1]):
+        origin = _points_on(chain, i, (0.0, 0.0, 0.0), q)
+        axis = _points_on(chain, i, (0.0, 0.0, 1.0), q) - origin
+        jacobians[:, :, i] = axis if chain.prismatic[i] else np.cross(axis, tips - origin)
     return jacobians
-
-
-@jit
-def _fill_jacobians(chain: ChainArrays, q: FloatArray, jacobians: FloatArray) -> None:
-    k, n = q.shape
-    rotation = np.empty((n, 3, 3))
-    origin = np.empty((n, 3))
-    tip = np.empty(3)
-    for j in range(k):
-        joint_frames(chain, q[j], rotation, origin)
-        tip_position(chain, rotation, origin, tip)
-        tip_jacobian(chain, rotation, origin, tip, jacobians[j])
 
 
 def skeletons(chain: ChainArrays, q: FloatArray) -> FloatArray:
@@ -165,8 +157,12 @@ def skeletons(chain: ChainArrays, q: FloatArray) -> FloatArray:
     k, n = q.shape
     points = np.zeros((k, n + 2, 3))
     for i in range(n):
-        # A joint's origin is the tip of the chain that ends there.
-        upto = ChainArrays._make(values[: i + 1] for values in chain)._replace(tip=read_only(np.zeros(3)))
-        points[:, i + 1] = tip_positions(upto, q[:, : i + 1])
+        points[:, i + 1] = _points_on(chain, i, (0.0, 0.0, 0.0), q)
     points[:, n + 1] = tip_positions(chain, q)
     return points
+
+
+def _points_on(chain: ChainArrays, i: int, place: tuple[float, float, float], q: FloatArray) -> FloatArray:
+    """Where a place in joint i's frame stands, shape (k, 3) [m]: the tip of the chain that ends there."""
+    upto = ChainArrays._make(values[: i + 1] for values in chain)
+    return tip_positions(upto._replace(tip=read_only(np.array(place))), q[:, : i + 1])
