@@ -48,5 +48,5 @@ def _warnings(measurement: Measurement | None, prediction: Prediction | None) ->
 
 
 def has_logs(trial: Trial) -> bool:
-    """Whether any run of the trial holds a lap."""
-    return any(run.laps for run in trial.runs)
+    """Whether any run of the trial that the servo drove holds a lap."""
+    return bool(trial.driven)

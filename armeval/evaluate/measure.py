@@ -139,12 +139,13 @@ def measure(
     """
     if align not in ("time", "rigid"):
         raise InputError(f"`{align}` is no alignment", "give `time` or `rigid`")
-    if not any(run.laps for run in trial.runs):
-        raise InputError("no run has logs", "add `logs` to a [[run]]", file=trial.source)
+    if not trial.driven:
+        what = "no run has logs" if not any(run.laps for run in trial.runs) else "a hand led the only run with logs"
+        raise InputError(what, "add `logs` to a [[run]] that the servo drives", file=trial.source)
     if trajectory is None:
         trajectory = plan_trial(trial)
     plan = trajectory
-    jobs = [(run, log) for run in trial.runs for log in run.laps]
+    jobs = [(run, log) for run in trial.driven for log in run.laps]
 
     def held(job: tuple[Run, JointLog]) -> tuple[LapTrack, tuple[Finding, ...]] | InputError:
         try:
@@ -159,8 +160,7 @@ def measure(
         raise InputError.of(finding for fault in faults for finding in fault.findings)
     runs = [
         run_errors([lap for (of, _), (lap, _) in zip(jobs, laps, strict=True) if of is run], plan)
-        for run in trial.runs
-        if run.laps
+        for run in trial.driven
     ]
     findings = (*trial.findings, *(finding for _, doubts in laps for finding in doubts))
     rigid = without_rigid_offset(runs, plan) if align == "rigid" else None

@@ -143,6 +143,15 @@ class Trial:
                 f"there is no run `{self.hand.run}`", f"runs here: {have}", file=self.source, place="[hand] run"
             )
 
+    @property
+    def driven(self) -> tuple[Run, ...]:
+        """Runs with logs in which the servo led the arm: those whose tip error can be measured.
+
+        A run that a hand led has no target to stray from.
+        """
+        led = self.hand.run if self.hand is not None else None
+        return tuple(run for run in self.runs if run.laps and run.name != led)
+
     def run(self, name: str) -> Run:
         """Find a run by its name.
 

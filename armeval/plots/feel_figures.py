@@ -15,28 +15,31 @@ from armeval.plots.feel_spectrum import feel_spectrum_plot
 from armeval.plots.feel_workspace import feel_workspace_plot
 from armeval.plots.style import figure, quiet_style
 
+_NARROW = 6.0
 _MAPS = ("ripple", "continuous_force", "dynamic_range", "mass_most")
 
 
-def feel_figures(met: Feel) -> dict[str, Figure]:
+def feel_figures(met: Feel, *, width: float = 9.0) -> dict[str, Figure]:
     """Draw the force along the path, the ripple by direction, its spectra, and maps at the height of the path if any.
 
     Parameters
     ----------
     met
         What a hand meets.
+    width
+        Of the figures [inches]; on a narrow one the two spectra stand one above the other.
 
     Returns
     -------
     Figures by name; a spectrum that cannot be had is left out.
     """
     with quiet_style():
-        figures = {"force": _force(met), "direction": _direction(met)}
-        spectra = _spectra(met)
+        figures = {"force": _force(met, width), "direction": _direction(met, width)}
+        spectra = _spectra(met, width)
         if spectra is not None:
             figures["spectrum"] = spectra
         if met.workspace is not None:
-            figures["workspace"] = made = figure(9.0, 7.0)
+            figures["workspace"] = made = figure(width, 0.78 * width)
             flattest = int(np.argmin(np.ptp(met.motion.tip, axis=0)))
             height = float(met.motion.tip[:, flattest].mean())
             for number, name in enumerate(_MAPS):
@@ -45,8 +48,8 @@ def feel_figures(met: Feel) -> dict[str, Figure]:
     return figures
 
 
-def _force(met: Feel) -> Figure:
-    made = figure(9.0, 5.0)
+def _force(met: Feel, width: float) -> Figure:
+    made = figure(width, 5.0)
     for number, part in enumerate(("cogging", "total")):
         ax = made.add_subplot(2, 1, number + 1)
         for state in met.states:
@@ -57,8 +60,8 @@ def _force(met: Feel) -> Figure:
     return made
 
 
-def _direction(met: Feel) -> Figure:
-    made = figure(4.0, 4.0)
+def _direction(met: Feel, width: float) -> Figure:
+    made = figure(min(width, 4.0), min(width, 4.0))
     ax = cast(PolarAxes, made.add_subplot(projection="polar"))
     for state in met.states:
         feel_polar_plot(state, ax)
@@ -66,14 +69,15 @@ def _direction(met: Feel) -> Figure:
     return made
 
 
-def _spectra(met: Feel) -> Figure | None:
+def _spectra(met: Feel, width: float) -> Figure | None:
     both = ([state.per_metre for state in met.states], [state.per_second for state in met.states])
     shown = [spectra for spectra in both if all(spectrum is not None for spectrum in spectra)]
     if not shown:
         return None
-    made = figure(9.0, 3.6)
+    rows, columns = (1, len(shown)) if width > _NARROW else (len(shown), 1)
+    made = figure(width, 3.6 * rows)
     for number, spectra in enumerate(shown):
-        ax = made.add_subplot(1, len(shown), number + 1)
+        ax = made.add_subplot(rows, columns, number + 1)
         for state, spectrum in zip(met.states, spectra, strict=True):
             if spectrum is not None:
                 named = not state.force.compensated

@@ -9,6 +9,7 @@ from armeval.errors import InputError
 from armeval.evaluate.budget import Budget, budget
 from armeval.evaluate.compare import Comparison, compare
 from armeval.evaluate.document import JsonValue, document
+from armeval.evaluate.feel import Feel, feel
 from armeval.evaluate.locate import Location
 from armeval.evaluate.locate_trial import has_logs, locate_trial
 from armeval.evaluate.measure import Measurement, measure
@@ -42,6 +43,8 @@ class Answers:
         The two runs that are compared, measured where both have logs, else predicted; None where there is no such pair.
     comparison
         Of these two.
+    feel
+        What the hand meets; None where the trial says nothing about a hand.
     """
 
     trial: Trial
@@ -53,14 +56,13 @@ class Answers:
     before: RunErrors | None
     after: RunErrors | None
     comparison: Comparison | None
+    feel: Feel | None = None
 
     @property
     def warnings(self) -> tuple[str, ...]:
         """What the reader should know, each once."""
-        measured = self.measurement.warnings if self.measurement is not None else ()
-        return tuple(
-            dict.fromkeys((*measured, *self.prediction.warnings, *self.location.warnings, *self.budget.warnings))
-        )
+        asked = (self.measurement, self.prediction, self.location, self.budget, self.feel)
+        return tuple(dict.fromkeys(said for answered in asked if answered is not None for said in answered.warnings))
 
     def to_document(self) -> dict[str, JsonValue]:
         """Give the JSON document ``armeval/report/1``."""
@@ -70,6 +72,7 @@ class Answers:
             "locate": self.location.to_document(),
             "budget": self.budget.to_document(),
             "comparison": self.comparison.to_document() if self.comparison is not None else None,
+            "feel": self.feel.to_document() if self.feel is not None else None,
         }
         return document("report", self.trial.title, self.warnings, content)
 
@@ -103,20 +106,21 @@ def answer(
         location = locate_trial(trial, measurement, prediction)
         progress("finding where it sticks", 1, 1)
         shares = waiting.result()
+    met = feel(trial, trajectory=plan, progress=progress) if trial.hand is not None else None
     first = _chosen(trial, before, compensated=False)
     second = _chosen(trial, after, compensated=True)
     if first is not None and first == second:
         raise InputError(f"`{first}` cannot be compared with itself", "give two different runs")
     pair = _pair(first, second, measurement, prediction)
     if pair is None:
-        return Answers(trial, plan, measurement, prediction, location, shares, None, None, None)
+        return Answers(trial, plan, measurement, prediction, location, shares, None, None, None, met)
     source = pair[0].tracks[0].source
     comparison = compare(
         *pair,
         regions_before=_regions(location, pair[0].name, source),
         regions_after=_regions(location, pair[1].name, source),
     )
-    return Answers(trial, plan, measurement, prediction, location, shares, *pair, comparison)
+    return Answers(trial, plan, measurement, prediction, location, shares, *pair, comparison, met)
 
 
 def _chosen(trial: Trial, name: str | None, *, compensated: bool) -> str | None:

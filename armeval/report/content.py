@@ -10,7 +10,7 @@ from armeval.evaluate.document import JsonValue, plain
 from armeval.evaluate.joint_shares import JointShare, joint_shares
 from armeval.evaluate.measure import BLIND_SPOT
 from armeval.progress import Progress, silent
-from armeval.report import joint_figures, path_figures, tables
+from armeval.report import hand_section, joint_figures, path_figures, tables
 from armeval.report.answers import Answers
 from armeval.report.drawing import Drawing, render
 from armeval.report.evidence import evidence
@@ -36,6 +36,8 @@ class Content:
         What it is about, and the runs that figures show.
     verdict, sticking, blame, worst, why
         The sentences of the first screen, and the one that opens the question why.
+    hand
+        What the hand meets, in a sentence; empty where the trial tells of none.
     merits
         Its figures of merit.
     drawings
@@ -61,6 +63,7 @@ class Content:
     blame: str
     worst: str
     why: str
+    hand: str
     merits: tuple[Merit, ...]
     drawings: Mapping[str, Drawing]
     tables: Mapping[str, Table]
@@ -90,6 +93,7 @@ def content_of(answers: Answers, *, command: str = "", progress: Progress = sile
         joint_figures.budget_figure(answers),
         joint_figures.orders_figure(answers, spectra),
         joint_figures.event_figure(answers, runs),
+        *(hand_section.hand_plans(answers.feel) if answers.feel is not None else ()),
     ]
     wanted = [plan for plan in plans if plan is not None]
     drawings = {}
@@ -106,6 +110,7 @@ def content_of(answers: Answers, *, command: str = "", progress: Progress = sile
         blame=blame_text(runs, shares),
         worst=worst_text(runs[0]),
         why=why_text(answers, runs),
+        hand=hand_section.hand_text(answers.feel) if answers.feel is not None else "",
         merits=merits(answers, runs),
         drawings=drawings,
         tables=_tables(answers, runs, shares),
@@ -135,6 +140,8 @@ def _tables(
         "stretches": tables.stretches_table(runs),
         "criteria": tables.criteria_table(measured),
     }
+    if answers.feel is not None:
+        found |= hand_section.hand_tables(answers.feel)
     return {name: table for name, table in found.items() if table is not None}
 
 

@@ -266,6 +266,8 @@ def frames(
                                 + [_along(run, "prediction", length) for run in predicted], ignore_index=True),
     }  # fmt: skip
     found["budget"] = answers.budget.to_frame()
+    if answers.feel is not None:
+        found |= {"hand_force": answers.feel.to_frame(), "hand_ripple": answers.feel.lines_frame()}
     bands = [
         run.ensemble.to_frame().assign(run=run.name) for run in answers.prediction.runs if run.ensemble is not None
     ]
