@@ -154,7 +154,8 @@ def rest_probability(
             row[_W] = push + row[_COULOMB] * np.sign(row[_V])
         row[_W] += prior.kick
         row[_SINCE] = -1.0
-        row[_RESTS:] = 0.0
+        for field in range(_RESTS, _FIELDS):
+            row[field] = 0.0
     steps = samples.shape[0]
     for s in range(steps - 1):
         i, j = samples[s], samples[s + 1]
@@ -210,7 +211,8 @@ def rest_probability(
                 while reach > sum_to and chosen < particles - 1:
                     chosen += 1
                     sum_to += weight[chosen] / total
-                Q[p] = P[chosen]
+                for field in range(_FIELDS):  # as an assignment of rows it would take a second longer to compile
+                    Q[p, field] = P[chosen, field]
                 Q[p, _V] *= 1.0 + _PART * normals[draw & mask]
                 Q[p, _SLOPE] += _PART * prior.slope_spread * normals[(draw + 1) & mask]
                 change = 1.0 + _PART * prior.friction_spread * normals[(draw + 2) & mask]
@@ -224,7 +226,9 @@ def rest_probability(
             P, Q = Q, P
     # Every rest adds its weight from its first sample to its last: sums of steps up and steps down.
     result = np.zeros((3, steps))
-    largest = log_weight.max()
+    largest = -1e300
+    for p in range(particles):
+        largest = max(largest, log_weight[p])
     total = 0.0
     for p in range(particles):
         w = np.exp(log_weight[p] - largest)
