@@ -4,11 +4,10 @@ from __future__ import annotations
 
 import numpy as np
 
-from armeval.arrays import FloatArray, IntArray
+from armeval.arrays import FloatArray, IntArray, read_only
 from armeval.kernels.compile import jit
 
 
-@jit
 def within_width(signal: FloatArray, width: float) -> IntArray:
     """Find the longest stretches over which a signal keeps within a width, in one pass.
 
@@ -24,11 +23,17 @@ def within_width(signal: FloatArray, width: float) -> IntArray:
     Shape (h, 2), first sample and the one after the last, in order. None of them can be made longer. Of two that
     overlap by more than half of the first, only the longer one is given.
     """
+    found, queues = np.empty((len(signal), 2), np.int64), np.empty((2, len(signal)), np.int64)
+    return found[: _within_width(read_only(signal), width, queues, found)].copy()
+
+
+@jit
+def _within_width(signal: FloatArray, width: float, queues: IntArray, found: IntArray) -> int:
+    """Fill in the stretches and give their number."""
     k = signal.shape[0]
-    found = np.empty((k, 2), np.int64)
     h = 0
     # Two queues of samples hold the largest and the smallest value of the stretch that ends here.
-    high, low = np.empty(k, np.int64), np.empty(k, np.int64)
+    high, low = queues[0], queues[1]
     high_first = high_stop = low_first = low_stop = 0
     start = 0
     for i in range(k + 1):
@@ -57,4 +62,4 @@ def within_width(signal: FloatArray, width: float) -> IntArray:
                 high_first += 1
             if low[low_first] < start:
                 low_first += 1
-    return found[:h].copy()
+    return h
