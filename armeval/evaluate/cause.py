@@ -15,6 +15,7 @@ import numpy as np
 
 from armeval.evaluate.cause_routes import (
     counterfactual_route,
+    held_share,
     limits_route,
     map_ratio,
     map_route,
@@ -28,6 +29,7 @@ from armeval.evaluate.regions import same_places
 from armeval.evaluate.rests import sticking_events
 from armeval.evaluate.sticking_event import CauseName, Route, StickingEvent
 from armeval.model.arm import Arm
+from armeval.model.drive import Drive
 from armeval.model.trial import Compensation, StickingRule
 
 Removable = Literal["cogging", "friction", "torque limit", "joint limit"]
@@ -82,7 +84,7 @@ def find_causes(
         drive, track = arm.drives[j], lap[event.lap]
         rows = slice(*np.searchsorted(track.time, (event.start, event.end)))
         stiffness = float(np.mean(stiffnesses[event.lap][rows, j]))
-        held = float(np.mean(held_by_friction[event.lap][rows, j]))
+        held = held_share(held_by_friction[event.lap][rows, j], event, _place(arm, drive))
         torque = torque_route(drive, event, held)
         friction_holds = drive.breakaway_friction == 0.0 or torque.says == "friction"
         ratio = map_ratio(drive, event, stiffness, table)
@@ -96,6 +98,11 @@ def find_causes(
     if counterfactual is not None:
         found = _replayed(arm, found, rule, counterfactual)
     return found
+
+
+def _place(arm: Arm, drive: Drive) -> float | None:
+    """Give the joint's cog pitch where an angle at rest can be told: an arm that sags under its weight rests lower."""
+    return cog_pitch(drive) if arm.servo.gravity_feedforward else None
 
 
 def judged(event: StickingEvent, routes: Sequence[Route]) -> CauseName:

@@ -7,6 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 
+from armeval.arrays import FloatArray
 from armeval.evaluate.cog_loss import residual
 from armeval.evaluate.cog_orders import orders, slope
 from armeval.evaluate.lap_track import LapTrack
@@ -19,7 +20,7 @@ from armeval.units import angle_text, significant, torque_text
 NEAR_LIMIT = np.radians(0.2)
 """A joint this near to the end of its range rests against it [rad or m]."""
 
-HELD_SHARE = 0.4
+HELD_SHARE = 0.5
 """Share of a rest from which friction alone is taken for its cause; friction itself is known to a quarter at best."""
 
 _SAME_PLACE = 0.2
@@ -56,6 +57,25 @@ def limits_route(arm: Arm, track: LapTrack, event: StickingEvent) -> Route:
     return Route("limits", "not shown", f"the torque reaches {torque_text(most)} of {torque_text(limit)}")
 
 
+def held_share(alone: FloatArray, event: StickingEvent, pitch: float | None) -> float:
+    """Share of a rest during which friction alone would hold the joint at the same place.
+
+    Parameters
+    ----------
+    alone
+        Shape (m,) [rad or m]. Where friction alone would hold it, at the samples of the rest; nan where it moves
+        (:func:`armeval.evaluate.joint_in_log.friction_alone`).
+    event
+        The rest.
+    pitch
+        The joint's cog pitch [rad or m]; None: any place counts as the same.
+    """
+    held = np.isfinite(alone)
+    if pitch is not None:
+        held &= np.abs(np.where(held, alone, np.inf) - event.joint_angle) <= _SAME_PLACE * pitch
+    return float(np.mean(held)) if held.size else 0.0
+
+
 def torque_route(drive: Drive, event: StickingEvent, held_share: float) -> Route:
     """Hold the torque that built up against what friction alone explains.
 
@@ -67,13 +87,12 @@ def torque_route(drive: Drive, event: StickingEvent, held_share: float) -> Route
     drive, event
         The joint's drive, and the rest.
     held_share
-        Share of the rest during which friction alone would hold the joint
-        (:func:`armeval.evaluate.joint_in_log.friction_alone`).
+        Share of the rest during which friction alone would hold the joint here (:func:`held_share`).
     """
     if drive.breakaway_friction == 0.0:
         return Route("torque", "not shown", "friction is not known: give `coulomb_friction`, or map both directions")
     built = torque_text(event.pull_end - event.pull_start, 2)
-    told = f"{built} built up; friction alone would hold the joint for {100.0 * held_share:.0f} % of this time"
+    told = f"{built} built up; friction alone would hold the joint here for {100.0 * held_share:.0f} % of this time"
     return Route("torque", "friction" if held_share >= HELD_SHARE else "not shown", told)
 
 

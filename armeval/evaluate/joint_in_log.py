@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from armeval.arrays import BoolArray, FloatArray, IntArray
+from armeval.arrays import FloatArray, IntArray
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.rest import sample_period
 from armeval.evaluate.servo_torque import servo_torque
@@ -136,8 +136,8 @@ def joint_stiffness_along(arm: Arm, angle: FloatArray) -> FloatArray:
     return np.maximum(_between(at, K, len(angle)), 1e-9)
 
 
-def friction_alone(arm: Arm, track: LapTrack, stiffness: FloatArray) -> BoolArray:
-    """Where each joint would rest if only friction opposed its servo, along a lap: shape (k, n).
+def friction_alone(arm: Arm, track: LapTrack, stiffness: FloatArray) -> FloatArray:
+    """Where each joint would rest if only friction opposed its servo, along a lap.
 
     Parameters
     ----------
@@ -145,11 +145,15 @@ def friction_alone(arm: Arm, track: LapTrack, stiffness: FloatArray) -> BoolArra
         The arm and the lap; of the lap only the targets count, and the poses.
     stiffness
         Shape (k, n) [N m/rad], from :func:`joint_stiffness_along`.
+
+    Returns
+    -------
+    Shape (k, n) [rad or m]. The angle at which it rests; nan where it moves.
     """
     from armeval.kernels.friction_alone import rests_by_friction
 
     told, inertia, damping = target_speed(track), inertia_along(arm, track.angle), _damping_along(arm, track.angle)
-    rests = [
+    alone = [
         rests_by_friction(
             track.time,
             np.ascontiguousarray(track.target[:, j]),
@@ -163,7 +167,7 @@ def friction_alone(arm: Arm, track: LapTrack, stiffness: FloatArray) -> BoolArra
         )
         for j, drive in enumerate(arm.drives)
     ]
-    return np.stack(rests, axis=1)
+    return np.stack([np.where(rests, angle, np.nan) for rests, angle in alone], axis=1)
 
 
 def _damping_along(arm: Arm, angle: FloatArray) -> FloatArray:

@@ -21,8 +21,8 @@ def rests_by_friction(
     coulomb: float,
     static: float,
     stribeck_speed: float,
-) -> BoolArray:
-    """Find where friction alone holds a joint.
+) -> tuple[BoolArray, FloatArray]:
+    """Find where friction alone holds a joint, and at which angle.
 
     One step a sample of J v' = K (target - angle) + D (target speed - v) - friction, linearly implicit in angle and
     speed, with friction as a bounded impulse: a joint that it can hold stands exactly still.
@@ -38,11 +38,12 @@ def rests_by_friction(
 
     Returns
     -------
-    Shape (k,). Whether the joint rests at the sample.
+    Shape (k,) each. Whether the joint rests at the sample, and its angle there [rad].
     """
     k = target.shape[0]
-    rests = np.ones(k, np.bool_)
+    rests, angles = np.ones(k, np.bool_), np.empty(k)
     angle, speed = target[0], 0.0
+    angles[0] = angle
     for i in range(k - 1):
         h = time[i + 1] - time[i]
         J, K, D = inertia[i], stiffness[i], damping[i]
@@ -53,5 +54,5 @@ def rests_by_friction(
         held = h * bound / effective
         speed = free - held if free > held else (free + held if free < -held else 0.0)
         angle += h * speed
-        rests[i + 1] = speed == 0.0
-    return rests
+        rests[i + 1], angles[i + 1] = speed == 0.0, angle
+    return rests, angles

@@ -9,7 +9,7 @@ from armeval.kernels.friction_alone import rests_by_friction
 def rests(target, told, period, *, J, K, D, Fc, Fs, vs=0.05):
     k = len(target)
     time = period * np.arange(k)
-    return rests_by_friction(time, target, told, np.full(k, J), np.full(k, K), np.full(k, D), Fc, Fs, vs)
+    return rests_by_friction(time, target, told, np.full(k, J), np.full(k, K), np.full(k, D), Fc, Fs, vs)[0]
 
 
 def runs(flag):
