@@ -1,3 +1,4 @@
+import dataclasses
 import json
 
 import numpy as np
@@ -93,3 +94,13 @@ def test_the_text_can_be_read_aloud(location):
 def test_nothing_to_look_at_is_an_error():
     with pytest.raises(InputError, match="no lap"):
         locate(CASE.arm(), [[], []])
+
+
+def test_the_second_of_two_regions_with_the_same_advice_refers_to_the_first(location):
+    region = dataclasses.replace(location.runs[0].regions[0], action="Stiffen it at 2.0 N·m/rad. It is slow here.")
+    other = dataclasses.replace(region, action="Stiffen it at 2.0 N·m/rad. It is fast here.")
+    run = dataclasses.replace(location.runs[0], regions=(region, other, region))
+    text = dataclasses.replace(location, runs=(run,)).to_text()
+    assert text.count("Stiffen it at 2.0 N·m/rad.") == 1
+    assert "     As for 1. It is fast here." in text
+    assert text.splitlines()[-1] == "     As for 1."
