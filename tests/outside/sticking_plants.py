@@ -37,8 +37,12 @@ class StickingLap:
 
     Attributes
     ----------
+    seed
+        Of the arm and its motion.
     arm
         What the package is told of the arm.
+    drives
+        What the joints truly are.
     target, target_speed, arc
         Shape (k, n) [rad], [rad/s], and (k,) [m] along the path.
     lap
@@ -47,6 +51,7 @@ class StickingLap:
         The plan that it followed.
     """
 
+    seed: int
     arm: Arm
     drives: tuple[PlantDrive, ...]
     target: FloatArray
@@ -144,13 +149,13 @@ class StickingLap:
         )
 
 
-def sticking_lap(seed: int, counts: int, *, jitter: float = 0.0, cogging: float = 1.0) -> StickingLap:
-    """Draw an arm and a motion and let the plant move it; ``cogging`` scales the true cogging torque."""
+def sticking_lap(seed: int, counts: int, *, jitter: float = 0.0, smooth: int | None = None) -> StickingLap:
+    """Draw an arm and a motion and let the plant move it; the joint ``smooth`` has no true cogging torque."""
     rng = np.random.default_rng(seed)
     shape = armeval.read_arm(shipped.FOLDER / "tern" / "arm.toml")
     given, true = [], []
-    for drive in shape.drives:
-        one, other = _drive(drive, rng, counts, jitter, cogging)
+    for j, drive in enumerate(shape.drives):
+        one, other = _drive(drive, rng, counts, jitter, 0.0 if j == smooth else 1.0)
         given.append(one)
         true.append(other)
     cutoff, delay = rng.uniform(80.0, 200.0), float(rng.choice([0.0, PERIOD]))
@@ -162,7 +167,7 @@ def sticking_lap(seed: int, counts: int, *, jitter: float = 0.0, cogging: float 
     plant = Plant(shipped.urdf_text("tern"), "stylus_tip", true, firmware)
     planned = _planned(seed, tuple(arm.rest))
     (lap,) = plant.run(planned.angle, planned.speed, planned.acceleration, seed=seed)
-    return StickingLap(arm, tuple(true), planned.angle, planned.speed, planned.arc, lap, planned)
+    return StickingLap(seed, arm, tuple(true), planned.angle, planned.speed, planned.arc, lap, planned)
 
 
 def _drive(
