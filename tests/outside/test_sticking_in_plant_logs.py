@@ -26,6 +26,7 @@ from tests.outside.sticking_plants import PERIOD, StickingLap, sticking_lap
 from tests.plant.truth import rests
 
 SEEDS = range(1000, 1014)
+SOME = SEEDS[:9]  # for causes the plant runs again without the cogging of each joint
 
 pytestmark = pytest.mark.slow
 
@@ -153,7 +154,7 @@ def still_there(case, joint, first, stop, angle):
 
 def test_causes_from_logs_agree_with_the_plant_run_again_without_the_joints_cogging():
     right = []
-    for seed in SEEDS:
+    for seed in SOME:
         case = plant_lap(seed, 16384)
         events = find_causes(
             case.arm, [case.track()], found(seed, 16384), rule=StickingRule(), compensation=Compensation()
@@ -161,13 +162,13 @@ def test_causes_from_logs_agree_with_the_plant_run_again_without_the_joints_cogg
         for event in events:
             if met_by(case, event) is not None:
                 right.append((event.cause == "cogging") != still_there(case, *rows(case, event), event.joint_angle))
-    assert len(right) > 100
+    assert len(right) > 60
     assert np.mean(right) >= 0.90
 
 
 def test_causes_from_the_replay_agree_with_the_plant_run_again_without_the_joints_cogging():
     right = []
-    for seed in SEEDS:
+    for seed in SOME:
         case = plant_lap(seed, 16384)
         lap = PredictedLap(case.true_arm, case.trajectory, Run("bare", False), Compensation(), substeps=4)
         track = lap.track(lap.replay())
@@ -185,5 +186,5 @@ def test_causes_from_the_replay_agree_with_the_plant_run_again_without_the_joint
             first, stop = (int(i) for i in np.searchsorted(track.time, (event.start - 1e-9, event.end - 1e-9)))
             if any(r.joint == joint and r.first <= stop and r.last >= first for r in case.true_rests):
                 right.append((event.cause == "cogging") != still_there(case, joint, first, stop, event.joint_angle))
-    assert len(right) > 100
+    assert len(right) > 60
     assert np.mean(right) >= 0.90
