@@ -89,7 +89,7 @@ def _ensemble_tables(prediction: Prediction) -> list[str]:
             errors.append([name, kind, length_text(float(np.median(rms))), interval])
         for joint, share in zip(found.joints, found.sticking, strict=True):
             at = length_text(float(found.arc[share.argmax()]), 4) if share.any() else ""
-            sticking.append([name, joint, f"{share.mean():.0%}", f"{share.max():.0%}", at])
+            sticking.append([name, joint, f"{100.0 * share.mean():.0f} %", f"{100.0 * share.max():.0f} %", at])
     first = known[0][1]
     members = f"{first.members} arms as they may be, drawn from the trial's [uncertainty] with seed {first.seed}"
     return [

@@ -9,7 +9,7 @@ from datetime import datetime
 from armeval.report.content import Content
 from armeval.report.tables import Table
 
-_MEANT = re.compile(r"([\\`*_{}\[\]<>()#+!|~$&])")
+_MEANT = re.compile(r"([\\`*_{}\[\]<>#+!|~$&])")
 
 
 def markdown_summary(content: Content, written: datetime) -> str:
