@@ -5,23 +5,23 @@ from .errors import Finding, InputError, InputWarning
 from .evaluate.budget import Budget, budget
 from .evaluate.cog_report import CogReport, cog_report
 from .evaluate.compare import Comparison, compare
-from .evaluate.ensemble import Ensemble, ensemble
 from .evaluate.feel import Feel, feel
+from .evaluate.feeling.workspace import WorkspaceMap, workspace_map
 from .evaluate.locate import Location, locate
 from .evaluate.locate_trial import locate_trial
 from .evaluate.measure import Measurement, measure
 from .evaluate.plan import plan, plan_trial
 from .evaluate.predict import Prediction, predict
-from .evaluate.quasistatic import quasistatic
-from .evaluate.replay import Replay, replay
-from .evaluate.sticking_ratio import StickingRatio, sticking_ratio
-from .evaluate.workspace import WorkspaceMap, workspace_map
+from .evaluate.replaying.ensemble import Ensemble, ensemble
+from .evaluate.replaying.quasistatic import quasistatic
+from .evaluate.replaying.replay import Replay, replay
+from .evaluate.replaying.sticking_ratio import StickingRatio, sticking_ratio
 from .files.arm_file import read_arm
 from .files.arm_writer import write_arm
 from .files.check import CheckResult, check
 from .files.cog_map_file import read_cog_map, write_cog_map
 from .files.demo import write_demo
-from .files.log_file import read_joint_log, write_joint_log
+from .files.joint_logs.log_file import read_joint_log, write_joint_log
 from .files.new_trial import new_trial, robot_folder, robot_names
 from .files.path_file import read_path, write_path
 from .files.thresholds_file import read_thresholds

@@ -6,7 +6,7 @@ from typing import Any
 
 import numpy as np
 
-from armeval.evaluate.replay import Replay, replay
+from armeval.evaluate.replaying.replay import Replay, replay
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain
 from armeval.model.drive import Drive

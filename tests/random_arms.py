@@ -91,7 +91,7 @@ def random_urdf(
 
 def chain_of(urdf: str, tip: str = TIP) -> Chain:
     """Read URDF text as armeval does."""
-    from armeval.files.urdf import read_urdf
+    from armeval.files.chains.urdf import read_urdf
 
     with tempfile.TemporaryDirectory() as folder:
         file = Path(folder) / "arm.urdf"

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.tracks import track
+from armeval.evaluate.measuring.tracks import track
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain
 from armeval.model.drive import Drive

@@ -10,7 +10,7 @@ from armeval.cli.answer import AsJson, Force, OutFolder, TrialFile
 
 if TYPE_CHECKING:
     from armeval.evaluate.budget import Budget
-    from armeval.evaluate.run_budget import RunBudget
+    from armeval.evaluate.replaying.run_budget import RunBudget
 
 
 def budget(

@@ -8,8 +8,8 @@ from collections.abc import Callable, Sequence
 import numpy as np
 
 from armeval.cli.text_table import text_table
-from armeval.evaluate.iso_9283 import PathCriteria
-from armeval.evaluate.rigid import RigidAlignment
+from armeval.evaluate.measuring.iso_9283 import PathCriteria
+from armeval.evaluate.measuring.rigid import RigidAlignment
 from armeval.evaluate.run_errors import RunErrors
 from armeval.units import angle_text, length_text, significant, time_text
 

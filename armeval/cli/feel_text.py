@@ -11,7 +11,7 @@ from armeval.units import length_text, significant
 
 if TYPE_CHECKING:
     from armeval.evaluate.feel import Feel
-    from armeval.evaluate.feel_state import FeelState
+    from armeval.evaluate.feeling.feel_state import FeelState
 
 _LINES = 6
 _NONE = "-"
@@ -154,7 +154,7 @@ _ABILITIES = (
 
 
 def _abilities(met: Feel) -> str:
-    from armeval.evaluate.workspace import spread_over
+    from armeval.evaluate.feeling.workspace import spread_over
 
     rows = []
     for name, what, unit, scale in _ABILITIES:
@@ -164,7 +164,7 @@ def _abilities(met: Feel) -> str:
 
 
 def _workspace(met: Feel) -> str:
-    from armeval.evaluate.workspace import spread_over
+    from armeval.evaluate.feeling.workspace import spread_over
 
     mapped = met.workspace
     if mapped is None:

@@ -7,12 +7,12 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from armeval.errors import InputError
-from armeval.evaluate.cause_replays import CAUSES, CauseReplays
+from armeval.evaluate.cogging.modelled_arm import modelled, unmapped
 from armeval.evaluate.document import JsonValue, as_text, document
-from armeval.evaluate.modelled_arm import modelled, unmapped
-from armeval.evaluate.owen_value import coalitions
 from armeval.evaluate.plan import plan_trial
-from armeval.evaluate.run_budget import RunBudget, run_budget
+from armeval.evaluate.replaying.cause_replays import CAUSES, CauseReplays
+from armeval.evaluate.replaying.owen_value import coalitions
+from armeval.evaluate.replaying.run_budget import RunBudget, run_budget
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Trial
 from armeval.progress import Progress, silent
@@ -110,8 +110,8 @@ def budget(
 
     The replay is repeated with every set of causes acting. What a cause accounts for is its Shapley value in the game
     in which a set of causes is worth its mean squared error; cogging and friction are split over the joints by the Owen
-    value (see :mod:`armeval.evaluate.owen_value`). With what is left when all causes are out, the parts add up to the
-    mean squared error exactly. The parts are those of the replay: no more certain than the files that it is made from.
+    value (see :mod:`armeval.evaluate.replaying.owen_value`). With what is left when all causes are out, the parts add up
+    to the mean squared error exactly. The parts are those of the replay: no more certain than the files that it is made from.
 
     Parameters
     ----------

@@ -10,9 +10,9 @@ import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.errors import InputError
-from armeval.evaluate.cog_agreement import MapAgreement, agreement
-from armeval.evaluate.cog_loss import CogResidual, residual
-from armeval.evaluate.cog_orders import CogOrder, detents, expected_orders, orders, significant_part
+from armeval.evaluate.cogging.cog_agreement import MapAgreement, agreement
+from armeval.evaluate.cogging.cog_loss import CogResidual, residual
+from armeval.evaluate.cogging.cog_orders import CogOrder, detents, expected_orders, orders, significant_part
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.model.arm import Arm
 from armeval.model.cogmap import CogMap

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Protocol
 
 from armeval.arrays import FloatArray
 from armeval.evaluate.document import JsonValue
-from armeval.evaluate.intervals import reduction_interval
+from armeval.evaluate.measuring.intervals import reduction_interval
 from armeval.evaluate.run_errors import RunErrors
 
 if TYPE_CHECKING:

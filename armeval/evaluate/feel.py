@@ -11,14 +11,14 @@ import numpy as np
 from armeval.arrays import BoolArray, FloatArray
 from armeval.errors import InputError
 from armeval.evaluate.document import JsonValue, as_text, document
-from armeval.evaluate.feel_notes import CAUTION, feel_notes
-from armeval.evaluate.feel_state import FeelState, feel_state
-from armeval.evaluate.hand_motion import HandMotion, logged_motion, planned_motion
+from armeval.evaluate.feeling.feel_notes import CAUTION, feel_notes
+from armeval.evaluate.feeling.feel_state import FeelState, feel_state
+from armeval.evaluate.feeling.hand_motion import HandMotion, logged_motion, planned_motion
+from armeval.evaluate.feeling.tip_abilities import TipAbilities, tip_abilities
+from armeval.evaluate.feeling.wall_stiffness import DAMPING_BOUND, FRICTION_BOUND
+from armeval.evaluate.feeling.workspace import FIGURES, WorkspaceMap, has_grid, spread_over, workspace_map
 from armeval.evaluate.plan import plan_trial
-from armeval.evaluate.reach import stretches
-from armeval.evaluate.tip_abilities import TipAbilities, tip_abilities
-from armeval.evaluate.wall_stiffness import DAMPING_BOUND, FRICTION_BOUND
-from armeval.evaluate.workspace import FIGURES, WorkspaceMap, has_grid, spread_over, workspace_map
+from armeval.evaluate.planning.reach import stretches
 from armeval.model.hand import Hand
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Trial

@@ -8,15 +8,15 @@ from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Literal
 
 from armeval.errors import InputError
-from armeval.evaluate.action import action
-from armeval.evaluate.carried_through import CarriedThrough, carried_through
-from armeval.evaluate.cause import Counterfactual, find_causes
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.regions import Counterpart, Region, counterparts, regions
-from armeval.evaluate.rests import sticking_events
-from armeval.evaluate.sticking_event import StickingEvent
-from armeval.evaluate.sticking_ratio import StickingRatio
+from armeval.evaluate.replaying.sticking_ratio import StickingRatio
+from armeval.evaluate.sticking.action import action
+from armeval.evaluate.sticking.carried_through import CarriedThrough, carried_through
+from armeval.evaluate.sticking.cause import Counterfactual, find_causes
+from armeval.evaluate.sticking.regions import Counterpart, Region, counterparts, regions
+from armeval.evaluate.sticking.rests import sticking_events
+from armeval.evaluate.sticking.sticking_event import StickingEvent
 from armeval.model.arm import Arm
 from armeval.model.trial import Compensation, StickingRule
 from armeval.units import angle_text, length_text, time_text

@@ -7,11 +7,11 @@ from typing import TYPE_CHECKING, Literal
 
 from armeval.errors import Finding, InputError
 from armeval.evaluate.document import JsonValue, as_text, document
-from armeval.evaluate.intervals import METHOD
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.log_track import log_track
+from armeval.evaluate.measuring.intervals import METHOD
+from armeval.evaluate.measuring.log_track import log_track
+from armeval.evaluate.measuring.rigid import RigidAlignment, without_rigid_offset
 from armeval.evaluate.plan import plan_trial
-from armeval.evaluate.rigid import RigidAlignment, without_rigid_offset
 from armeval.evaluate.run_errors import (
     RunErrors,
     criteria_frame,

@@ -9,7 +9,7 @@ import numpy as np
 
 from armeval.arrays import BoolArray, FloatArray
 from armeval.errors import Findings, InputError
-from armeval.evaluate.reach import (
+from armeval.evaluate.planning.reach import (
     REACH_TOLERANCE,
     RowPlaces,
     find_beyond_range,
@@ -17,7 +17,7 @@ from armeval.evaluate.reach import (
     find_unreached,
     poses,
 )
-from armeval.evaluate.time_law import servo_times, trapezoid
+from armeval.evaluate.planning.time_law import servo_times, trapezoid
 from armeval.kernels.chain import tip_positions
 from armeval.model.arm import Arm
 from armeval.model.planned_path import PlannedPath

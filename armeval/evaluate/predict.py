@@ -7,17 +7,17 @@ from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 from armeval.errors import InputError
-from armeval.evaluate.cause import Counterfactual
+from armeval.evaluate.cogging.modelled_arm import modelled, unmapped
 from armeval.evaluate.document import JsonValue, as_text, document
-from armeval.evaluate.ensemble import Ensemble, ensemble
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.modelled_arm import modelled, unmapped
 from armeval.evaluate.plan import plan_trial
-from armeval.evaluate.predicted_lap import PredictedLap
-from armeval.evaluate.quasistatic import Quasistatic, quasistatic
+from armeval.evaluate.replaying.ensemble import Ensemble, ensemble
+from armeval.evaluate.replaying.predicted_lap import PredictedLap
+from armeval.evaluate.replaying.quasistatic import Quasistatic, quasistatic
+from armeval.evaluate.replaying.step_error import StepError
+from armeval.evaluate.replaying.sticking_ratio import StickingRatio, sticking_ratio
 from armeval.evaluate.run_errors import RunErrors, run_errors, runs_frame
-from armeval.evaluate.step_error import StepError
-from armeval.evaluate.sticking_ratio import StickingRatio, sticking_ratio
+from armeval.evaluate.sticking.cause import Counterfactual
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Trial
 from armeval.progress import Progress, silent

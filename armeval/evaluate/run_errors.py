@@ -8,10 +8,10 @@ from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from armeval.evaluate.criteria import Components, StretchErrors, components, lap_sums, over_laps, stretches
 from armeval.evaluate.document import JsonValue
-from armeval.evaluate.iso_9283 import PathCriteria, path_criteria
 from armeval.evaluate.lap_track import LapTrack
+from armeval.evaluate.measuring.criteria import Components, StretchErrors, components, lap_sums, over_laps, stretches
+from armeval.evaluate.measuring.iso_9283 import PathCriteria, path_criteria
 from armeval.evaluate.summary import ErrorSummary, summarise
 from armeval.model.trajectory import Trajectory
 

@@ -10,7 +10,7 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.errors import InputError
 from armeval.evaluate.document import JsonValue
-from armeval.evaluate.intervals import rms_bootstrap
+from armeval.evaluate.measuring.intervals import rms_bootstrap
 from armeval.kernels.moments import moments
 
 
@@ -19,7 +19,7 @@ class ErrorSummary:
     """RMS with its 95 % interval, mean, median, 95th percentile, maximum [m] and samples used.
 
     ``effective_samples`` is how many independent samples would tell the RMS as surely (see
-    :mod:`armeval.evaluate.intervals`); NaN where it was not asked for.
+    :mod:`armeval.evaluate.measuring.intervals`); NaN where it was not asked for.
     """
 
     rms: float

@@ -13,10 +13,10 @@ import numpy as np
 from armeval.arrays import FloatArray
 from armeval.errors import Findings, InputError, near
 from armeval.files.arm_table import ARM_SCHEMA, ArmTable, CogMapTable, JointTable, ServoTable
+from armeval.files.chains.urdf import read_urdf
 from armeval.files.quantities import JointKind
-from armeval.files.reading import Reading, existing_file
+from armeval.files.tables.reading import Reading, existing_file
 from armeval.files.toml_file import check_schema, read_toml, validate
-from armeval.files.urdf import read_urdf
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain
 from armeval.model.cogmap import CogMap

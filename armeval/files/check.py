@@ -88,8 +88,8 @@ def check(path: str | os.PathLike[str], *, progress: Progress = silent) -> Check
 
 
 def _check_urdf(path: str | os.PathLike[str], found: Findings) -> None:
-    from armeval.files.urdf_text import parse
-    from armeval.files.urdf_tree import moving_chain
+    from armeval.files.chains.urdf_text import parse
+    from armeval.files.chains.urdf_tree import moving_chain
 
     moving_chain(parse(read_text(path), found), None, found)
 

@@ -10,13 +10,13 @@ import numpy as np
 
 from armeval.arrays import FloatArray
 from armeval.errors import Findings, near
-from armeval.files.columns import factor, find, missing, renamed, unused
-from armeval.files.dialect import Column
-from armeval.files.reading import Reading
-from armeval.files.row_faults import note_rows
-from armeval.files.scaled import Scaled
-from armeval.files.table import Table, open_table
-from armeval.files.table_writer import write_table
+from armeval.files.tables.columns import factor, find, missing, renamed, unused
+from armeval.files.tables.dialect import Column
+from armeval.files.tables.reading import Reading
+from armeval.files.tables.row_faults import note_rows
+from armeval.files.tables.scaled import Scaled
+from armeval.files.tables.table import Table, open_table
+from armeval.files.tables.table_writer import write_table
 from armeval.model.cogmap import CogMap, CogQuantity
 
 
@@ -124,7 +124,7 @@ def read_cog_map(
         if quantity == "spin_acceleration":
             torque -= torque.mean()
 
-        from armeval.evaluate.cog_resample import resample
+        from armeval.evaluate.cogging.cog_resample import resample
 
         cog_map, told = resample(
             turn,

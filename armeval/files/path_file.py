@@ -9,13 +9,13 @@ from typing import Literal
 import numpy as np
 
 from armeval.errors import Findings, InputError
-from armeval.files.columns import factor, find, missing, unused
-from armeval.files.dialect import Column
-from armeval.files.reading import Reading
-from armeval.files.row_faults import refuse_time_that_does_not_rise
-from armeval.files.scaled import Scaled
-from armeval.files.table import open_table
-from armeval.files.table_writer import write_table
+from armeval.files.tables.columns import factor, find, missing, unused
+from armeval.files.tables.dialect import Column
+from armeval.files.tables.reading import Reading
+from armeval.files.tables.row_faults import refuse_time_that_does_not_rise
+from armeval.files.tables.scaled import Scaled
+from armeval.files.tables.table import open_table
+from armeval.files.tables.table_writer import write_table
 from armeval.model.planned_path import PlannedPath
 
 _AXES = ("x", "y", "z")

@@ -6,7 +6,7 @@ import os
 from pathlib import Path
 
 from armeval.errors import InputError
-from armeval.files.reading import existing_file
+from armeval.files.tables.reading import existing_file
 
 _SHOWN = 8
 

@@ -8,8 +8,8 @@ from typing import Any
 
 from armeval.errors import Findings, InputError
 from armeval.files.arm_file import ArmReading, load_arm
-from armeval.files.logs import find_logs, read_logs
-from armeval.files.reading import Reading, existing_file
+from armeval.files.joint_logs.logs import find_logs, read_logs
+from armeval.files.tables.reading import Reading, existing_file
 from armeval.files.toml_file import check_schema, read_toml, validate
 from armeval.files.trial_table import TRIAL_SCHEMA, HandTable, TrialTable
 from armeval.model.hand import Hand

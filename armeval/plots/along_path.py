@@ -6,7 +6,7 @@ import numpy as np
 from matplotlib.axes import Axes
 
 from armeval.arrays import FloatArray
-from armeval.evaluate.along_path import ErrorAlongPath
+from armeval.evaluate.measuring.along_path import ErrorAlongPath
 from armeval.plots.style import BEFORE, Stroke, label_text
 
 

@@ -6,7 +6,7 @@ import numpy as np
 from matplotlib.axes import Axes
 
 from armeval.evaluate.budget import Budget
-from armeval.evaluate.run_budget import RunBudget
+from armeval.evaluate.replaying.run_budget import RunBudget
 from armeval.plots.style import AFTER, BEFORE, INK, QUIET, label_text
 
 _JOINT_ALPHA = 0.45

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 
 from matplotlib.axes import Axes
 
-from armeval.evaluate.error_orders import ErrorOrders
+from armeval.evaluate.measuring.error_orders import ErrorOrders
 from armeval.plots.style import QUIET, Stroke, label_text
 
 

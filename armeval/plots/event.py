@@ -8,7 +8,7 @@ from matplotlib.axes import Axes
 
 from armeval.arrays import BoolArray
 from armeval.evaluate.lap_track import LapTrack
-from armeval.evaluate.sticking_event import StickingEvent
+from armeval.evaluate.sticking.sticking_event import StickingEvent
 from armeval.plots.style import GRID, INK, TARGET, Stroke
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from matplotlib.axes import Axes
 
-from armeval.evaluate.feel_state import FeelState
+from armeval.evaluate.feeling.feel_state import FeelState
 from armeval.plots.style import AFTER, BEFORE, INK, QUIET, Stroke
 
 _MOST_POINTS = 4000  # of one drawn line; more cannot be told apart on paper

@@ -6,7 +6,7 @@ import numpy as np
 from matplotlib.projections.polar import PolarAxes
 from matplotlib.ticker import MaxNLocator
 
-from armeval.evaluate.feel_state import FeelState
+from armeval.evaluate.feeling.feel_state import FeelState
 from armeval.plots.feel_force import stroke_of
 from armeval.plots.view import broad_view
 

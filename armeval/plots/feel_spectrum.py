@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from matplotlib.axes import Axes
 
-from armeval.evaluate.ripple_spectrum import RippleSpectrum
+from armeval.evaluate.feeling.ripple_spectrum import RippleSpectrum
 from armeval.plots.style import INK, Stroke
 
 _NAMED = 5

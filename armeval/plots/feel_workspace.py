@@ -8,7 +8,7 @@ from matplotlib.collections import QuadMesh
 from matplotlib.colors import LogNorm, Normalize
 
 from armeval.arrays import FloatArray
-from armeval.evaluate.workspace import WorkspaceMap
+from armeval.evaluate.feeling.workspace import WorkspaceMap
 from armeval.plots.style import INK
 
 _AXES = "xyz"
@@ -27,7 +27,7 @@ def feel_workspace_plot(
     ax
         Where to draw; a bar of colours is put beside it.
     figure
-        A field of :class:`armeval.evaluate.tip_abilities.TipAbilities`.
+        A field of :class:`armeval.evaluate.feeling.tip_abilities.TipAbilities`.
     normal
         Base axis (0, 1, 2) across the slice; None: the one along which the workspace is least wide.
     at

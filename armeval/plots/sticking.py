@@ -11,9 +11,9 @@ from matplotlib.lines import Line2D
 from matplotlib.patches import Patch
 
 from armeval.arrays import FloatArray
-from armeval.evaluate.regions import Region
-from armeval.evaluate.sticking_event import StickingEvent
-from armeval.evaluate.sticking_ratio import StickingRatio
+from armeval.evaluate.replaying.sticking_ratio import StickingRatio
+from armeval.evaluate.sticking.regions import Region
+from armeval.evaluate.sticking.sticking_event import StickingEvent
 from armeval.plots.style import INK, Stroke, label_text
 
 _LEAST_WIDTH = 1.5  # mm of path: a shorter rest would not be seen

@@ -15,8 +15,8 @@ from armeval.evaluate.locate_trial import has_logs, locate_trial
 from armeval.evaluate.measure import Measurement, measure
 from armeval.evaluate.plan import plan_trial
 from armeval.evaluate.predict import Prediction, predict
-from armeval.evaluate.regions import Region
 from armeval.evaluate.run_errors import RunErrors
+from armeval.evaluate.sticking.regions import Region
 from armeval.model.trajectory import Trajectory
 from armeval.model.trial import Trial
 from armeval.progress import Progress, silent

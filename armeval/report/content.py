@@ -7,8 +7,8 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from armeval.evaluate.document import JsonValue, plain
-from armeval.evaluate.joint_shares import JointShare, joint_shares
 from armeval.evaluate.measure import BLIND_SPOT
+from armeval.evaluate.measuring.joint_shares import JointShare, joint_shares
 from armeval.progress import Progress, silent
 from armeval.report import hand_section, joint_figures, path_figures, tables
 from armeval.report.answers import Answers

@@ -6,8 +6,8 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from armeval.evaluate.intervals import METHOD
 from armeval.evaluate.measure import BLIND_SPOT
+from armeval.evaluate.measuring.intervals import METHOD
 from armeval.report.answers import Answers
 from armeval.report.path_figures import predicted_interval
 from armeval.report.shown import ShownRun

@@ -8,7 +8,7 @@ from collections.abc import Callable
 from matplotlib.figure import Figure
 
 from armeval.evaluate.feel import Feel
-from armeval.evaluate.feel_state import FeelState
+from armeval.evaluate.feeling.feel_state import FeelState
 from armeval.plots.feel_figures import feel_figures
 from armeval.report.drawing import Plan
 from armeval.report.tables import Table

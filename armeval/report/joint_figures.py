@@ -8,9 +8,9 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 from matplotlib.figure import Figure
 
-from armeval.evaluate.cog_orders import expected_orders
-from armeval.evaluate.error_orders import ErrorOrders, error_orders
-from armeval.evaluate.sticking_event import StickingEvent
+from armeval.evaluate.cogging.cog_orders import expected_orders
+from armeval.evaluate.measuring.error_orders import ErrorOrders, error_orders
+from armeval.evaluate.sticking.sticking_event import StickingEvent
 from armeval.plots.budget import budget_plot
 from armeval.plots.cog_map import cog_map_plot
 from armeval.plots.error_orders import error_orders_plot

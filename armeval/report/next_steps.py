@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from armeval.evaluate.regions import Region
+from armeval.evaluate.sticking.regions import Region
 from armeval.report.answers import Answers
 from armeval.report.shown import ShownRun
 from armeval.units import significant

@@ -7,8 +7,8 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 from matplotlib.figure import Figure
 
-from armeval.evaluate.along_path import ErrorAlongPath, error_along_path
-from armeval.evaluate.regions import Region
+from armeval.evaluate.measuring.along_path import ErrorAlongPath, error_along_path
+from armeval.evaluate.sticking.regions import Region
 from armeval.kernels.chain import skeletons
 from armeval.plots.along_path import along_path_plot, band_plot
 from armeval.plots.path import mark_stretch, path_plot

@@ -9,12 +9,12 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from armeval.evaluate.along_path import error_along_path
-from armeval.evaluate.error_orders import ErrorOrders
-from armeval.evaluate.joint_shares import JointShare
-from armeval.evaluate.regions import Region
+from armeval.evaluate.measuring.along_path import error_along_path
+from armeval.evaluate.measuring.error_orders import ErrorOrders
+from armeval.evaluate.measuring.joint_shares import JointShare
 from armeval.evaluate.run_errors import RunErrors, criteria_frame, laps_frame, runs_frame, stretches_frame
-from armeval.evaluate.sticking_event import StickingEvent
+from armeval.evaluate.sticking.regions import Region
+from armeval.evaluate.sticking.sticking_event import StickingEvent
 from armeval.report.answers import Answers
 from armeval.report.shown import ShownRun
 from armeval.report.verdict import fates_of, millimetres, percent

@@ -6,8 +6,8 @@ import math
 from collections import Counter
 from collections.abc import Sequence
 
-from armeval.evaluate.joint_shares import JointShare
-from armeval.evaluate.regions import Counterpart, counterparts
+from armeval.evaluate.measuring.joint_shares import JointShare
+from armeval.evaluate.sticking.regions import Counterpart, counterparts
 from armeval.evaluate.summary import ErrorSummary
 from armeval.report.answers import Answers
 from armeval.report.shown import ShownRun

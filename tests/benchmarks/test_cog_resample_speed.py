@@ -3,8 +3,8 @@
 import numpy as np
 from pytest_benchmark.fixture import BenchmarkFixture
 
-from armeval.evaluate.cog_orders import detents, orders
-from armeval.evaluate.cog_resample import resample
+from armeval.evaluate.cogging.cog_orders import detents, orders
+from armeval.evaluate.cogging.cog_resample import resample
 
 
 def test_resampling_31700_uneven_samples_in_two_directions(benchmark: BenchmarkFixture) -> None:

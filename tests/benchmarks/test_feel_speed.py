@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 from pytest_benchmark.fixture import BenchmarkFixture
 
-from armeval.evaluate.tip_abilities import tip_abilities
-from armeval.evaluate.workspace import workspace_map
+from armeval.evaluate.feeling.tip_abilities import tip_abilities
+from armeval.evaluate.feeling.workspace import workspace_map
 from armeval.files.arm_file import read_arm
 from armeval.files.new_trial import robot_folder
 

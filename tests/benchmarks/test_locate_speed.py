@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from armeval.evaluate.rests import sticking_events
+from armeval.evaluate.sticking.rests import sticking_events
 from armeval.model.trial import StickingRule
 from tests.evaluate.sticking_cases import Case, lap, moved, to_and_fro
 

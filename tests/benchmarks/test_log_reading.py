@@ -18,7 +18,7 @@ import pytest
 from pyarrow import csv
 
 from armeval.errors import Findings
-from armeval.files.log_file import read_joint_log, write_joint_log
+from armeval.files.joint_logs.log_file import read_joint_log, write_joint_log
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain
 from armeval.model.drive import Drive
@@ -33,7 +33,7 @@ import sys
 from pathlib import Path
 from tests.benchmarks.test_log_reading import invented_arm, most_memory
 from armeval.errors import Findings
-from armeval.files.log_file import read_joint_log
+from armeval.files.joint_logs.log_file import read_joint_log
 import pyarrow.csv
 before = most_memory()
 (log,) = read_joint_log(Path(sys.argv[1]), invented_arm(), findings=Findings())

@@ -19,7 +19,7 @@ import pytest
 from pyarrow import csv
 
 from armeval.evaluate.measure import measure
-from armeval.evaluate.tracks import tips
+from armeval.evaluate.measuring.tracks import tips
 from armeval.files.arm_file import read_arm
 from armeval.files.new_trial import robot_folder
 from armeval.model.arm import Arm

@@ -3,10 +3,10 @@
 import numpy as np
 import pytest
 
-from armeval.evaluate.path_progress import follow, path_progress
 from armeval.evaluate.plan import plan
-from armeval.evaluate.quasistatic import quasistatic
-from armeval.evaluate.sticking_ratio import sticking_ratio
+from armeval.evaluate.planning.path_progress import follow, path_progress
+from armeval.evaluate.replaying.quasistatic import quasistatic
+from armeval.evaluate.replaying.sticking_ratio import sticking_ratio
 from armeval.kernels.inverse import first_pose, poses_along
 from armeval.model.planned_path import PlannedPath
 from armeval.model.servo import Servo

@@ -17,8 +17,8 @@ import numpy as np
 import pinocchio
 import pytest
 
-from armeval.evaluate.members import clean_tables, drawn_member
-from armeval.evaluate.replay_input import ReplayInput, replay_input, with_members
+from armeval.evaluate.replaying.members import clean_tables, drawn_member
+from armeval.evaluate.replaying.replay_input import ReplayInput, replay_input, with_members
 from armeval.kernels.chain import tip_positions
 from armeval.kernels.lanes import WIDTH
 from armeval.kernels.replay import replay_lap

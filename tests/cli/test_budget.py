@@ -8,7 +8,7 @@ from typer.testing import CliRunner
 from armeval.cli.app import app
 from armeval.cli.budget import budget_text
 from armeval.evaluate.budget import Budget
-from armeval.evaluate.run_budget import CauseBudget, Part, RunBudget
+from armeval.evaluate.replaying.run_budget import CauseBudget, Part, RunBudget
 from armeval.files.new_trial import new_trial
 
 MADE_UP = Budget(

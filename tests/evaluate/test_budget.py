@@ -9,12 +9,12 @@ import pytest
 
 from armeval.errors import InputError
 from armeval.evaluate.budget import budget
-from armeval.evaluate.cause_replays import CauseReplays
-from armeval.evaluate.modelled_arm import modelled
-from armeval.evaluate.owen_value import coalitions
+from armeval.evaluate.cogging.modelled_arm import modelled
+from armeval.evaluate.measuring.tracks import tips
 from armeval.evaluate.plan import plan_trial
-from armeval.evaluate.replay import replay
-from armeval.evaluate.tracks import tips
+from armeval.evaluate.replaying.cause_replays import CauseReplays
+from armeval.evaluate.replaying.owen_value import coalitions
+from armeval.evaluate.replaying.replay import replay
 from armeval.model.arm import Arm
 from armeval.model.causes import Causes
 from armeval.model.planned_path import PlannedPath

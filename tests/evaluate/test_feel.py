@@ -10,7 +10,7 @@ import pytest
 
 from armeval.errors import InputError
 from armeval.evaluate.feel import feel
-from armeval.evaluate.feel_notes import CAUTION
+from armeval.evaluate.feeling.feel_notes import CAUTION
 from armeval.files.demo import write_demo
 from armeval.files.thresholds_file import read_thresholds
 from armeval.files.trial_file import read_trial

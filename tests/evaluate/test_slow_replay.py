@@ -4,8 +4,8 @@ import numpy as np
 import pytest
 
 from armeval.evaluate.plan import plan
-from armeval.evaluate.quasistatic import quasistatic
-from armeval.evaluate.replay import replay
+from armeval.evaluate.replaying.quasistatic import quasistatic
+from armeval.evaluate.replaying.replay import replay
 from armeval.model.planned_path import PlannedPath
 from armeval.model.servo import Servo
 from tests.planar_arms import harmonic_map, planar_arm

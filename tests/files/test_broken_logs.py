@@ -14,7 +14,7 @@ from hypothesis import HealthCheck, example, given, settings
 from hypothesis import strategies as st
 
 from armeval.errors import Finding, Findings, InputError
-from armeval.files.log_file import read_joint_log, write_joint_log
+from armeval.files.joint_logs.log_file import read_joint_log, write_joint_log
 from armeval.model.arm import Arm
 from armeval.model.joint_log import JointLog
 from tests.files.findings import faults

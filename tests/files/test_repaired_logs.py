@@ -13,7 +13,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from armeval.errors import Findings
-from armeval.files.log_file import read_joint_log
+from armeval.files.joint_logs.log_file import read_joint_log
 from armeval.model.arm import Arm
 
 ROWS = 200

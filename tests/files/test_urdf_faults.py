@@ -10,7 +10,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from armeval.errors import Finding, Findings, InputError, InputWarning
-from armeval.files.urdf import read_urdf
+from armeval.files.chains.urdf import read_urdf
 from tests.files.findings import faults, only_fault
 from tests.files.samples import URDF
 

@@ -11,7 +11,7 @@ import pytest
 from scipy import stats
 from scipy.signal import lfilter
 
-from armeval.evaluate.intervals import block_length, rms_bootstrap, rms_interval
+from armeval.evaluate.measuring.intervals import block_length, rms_bootstrap, rms_interval
 
 
 def autoregressive(seed, correlation, samples):

@@ -10,7 +10,7 @@ import math
 import numpy as np
 import pytest
 
-from armeval.evaluate.cog_loss import lookup, order_residual, residual, table_gain, table_noise
+from armeval.evaluate.cogging.cog_loss import lookup, order_residual, residual, table_gain, table_noise
 from armeval.model.cogmap import CogMap
 from armeval.model.trial import Compensation
 

@@ -7,8 +7,8 @@ confirmed numerically); amplitude noise of one harmonic, sigma sqrt(2 / M), is t
 import numpy as np
 import pytest
 
-from armeval.evaluate.cog_orders import orders
-from armeval.evaluate.cog_resample import resample
+from armeval.evaluate.cogging.cog_orders import orders
+from armeval.evaluate.cogging.cog_resample import resample
 
 TURN = 2.0 * np.pi
 

@@ -9,7 +9,7 @@ although its native order is 120 is common practice, no source.
 
 import pytest
 
-from armeval.evaluate.cog_orders import expected_orders
+from armeval.evaluate.cogging.cog_orders import expected_orders
 
 
 @pytest.mark.parametrize(

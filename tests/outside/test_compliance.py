@@ -10,7 +10,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from armeval.evaluate.sticking_ratio import joint_stiffness
+from armeval.evaluate.replaying.sticking_ratio import joint_stiffness
 from armeval.kernels.chain import tip_jacobians, tip_positions
 from armeval.kernels.tip_stiffness import spring_stiffness
 from armeval.model.servo import Servo

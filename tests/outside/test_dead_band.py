@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from armeval.evaluate.plan import plan
-from armeval.evaluate.quasistatic import quasistatic
+from armeval.evaluate.replaying.quasistatic import quasistatic
 from armeval.model.planned_path import PlannedPath
 from armeval.model.servo import Servo
 from tests.planar_arms import planar_arm

@@ -18,7 +18,7 @@ import pytest
 
 from armeval.arrays import FloatArray
 from armeval.errors import Findings
-from armeval.files.log_file import read_joint_log, write_joint_log
+from armeval.files.joint_logs.log_file import read_joint_log, write_joint_log
 from armeval.kernels.chain import tip_positions
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain

@@ -14,7 +14,7 @@ import numpy as np
 import pytest
 
 from armeval.errors import Findings
-from armeval.evaluate.cog_resample import resample
+from armeval.evaluate.cogging.cog_resample import resample
 from armeval.files.cog_map_file import read_cog_map
 
 FOLDER = os.environ.get("ARMEVAL_OPEN_DATA")

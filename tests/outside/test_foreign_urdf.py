@@ -13,7 +13,7 @@ import numpy as np
 import pytest
 
 from armeval.errors import Findings
-from armeval.files.urdf import read_urdf
+from armeval.files.chains.urdf import read_urdf
 from tests.outside.plain_chain import agree
 from tests.random_arms import pinocchio_model
 

@@ -7,7 +7,7 @@ confirmed for poses, numbers of cycles confirmed in Table 5).
 import numpy as np
 import pytest
 
-from armeval.evaluate.iso_9283 import accuracy_and_repeatability, path_criteria, velocity_criteria
+from armeval.evaluate.measuring.iso_9283 import accuracy_and_repeatability, path_criteria, velocity_criteria
 from tests.slides import along, lap_of
 
 RADII = np.tile([0.1, 0.2, 0.1, 0.3, 0.2], 2) * 1e-3

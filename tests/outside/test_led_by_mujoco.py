@@ -12,9 +12,9 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from armeval.evaluate.hand_force import hand_force
-from armeval.evaluate.hand_motion import planned_motion
-from armeval.evaluate.inner_motion import with_inner_motion
+from armeval.evaluate.feeling.hand_force import hand_force
+from armeval.evaluate.feeling.hand_motion import planned_motion
+from armeval.evaluate.feeling.inner_motion import with_inner_motion
 from armeval.evaluate.plan import plan
 from armeval.files.arm_file import read_arm
 from armeval.files.new_trial import robot_folder

@@ -15,9 +15,9 @@ import numpy as np
 import numpy.typing as npt
 import pytest
 
-from armeval.evaluate.cog_agreement import agreement
-from armeval.evaluate.cog_orders import detents, orders
-from armeval.evaluate.cog_resample import resample
+from armeval.evaluate.cogging.cog_agreement import agreement
+from armeval.evaluate.cogging.cog_orders import detents, orders
+from armeval.evaluate.cogging.cog_resample import resample
 from armeval.model.cogmap import CogMap
 
 FloatArray = npt.NDArray[np.float64]

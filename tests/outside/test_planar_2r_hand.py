@@ -14,12 +14,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from armeval.evaluate.hand_force import hand_force
-from armeval.evaluate.hand_motion import planned_motion
+from armeval.evaluate.feeling.hand_force import hand_force
+from armeval.evaluate.feeling.hand_motion import planned_motion
+from armeval.evaluate.feeling.ripple import ripple, ripple_covariance
+from armeval.evaluate.feeling.tip_abilities import tip_abilities
+from armeval.evaluate.feeling.tip_directions import tip_directions
 from armeval.evaluate.plan import plan
-from armeval.evaluate.ripple import ripple, ripple_covariance
-from armeval.evaluate.tip_abilities import tip_abilities
-from armeval.evaluate.tip_directions import tip_directions
 from armeval.model.planned_path import PlannedPath
 from tests.planar_arms import harmonic_map, planar_arm
 

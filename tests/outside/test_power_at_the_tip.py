@@ -8,11 +8,11 @@ import numpy as np
 import pinocchio
 import pytest
 
-from armeval.evaluate.hand_force import PARTS, hand_force
-from armeval.evaluate.hand_motion import planned_motion
-from armeval.evaluate.inner_motion import with_inner_motion
+from armeval.evaluate.feeling.hand_force import PARTS, hand_force
+from armeval.evaluate.feeling.hand_motion import planned_motion
+from armeval.evaluate.feeling.inner_motion import with_inner_motion
+from armeval.evaluate.feeling.tip_directions import tip_directions
 from armeval.evaluate.plan import plan
-from armeval.evaluate.tip_directions import tip_directions
 from armeval.model.arm import Arm
 from armeval.model.drive import Drive
 from armeval.model.planned_path import PlannedPath

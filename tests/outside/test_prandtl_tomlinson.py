@@ -10,8 +10,8 @@ import pytest
 from scipy.optimize import brentq
 
 from armeval.evaluate.plan import plan
-from armeval.evaluate.quasistatic import quasistatic
-from armeval.evaluate.sticking_ratio import sticking_ratio
+from armeval.evaluate.replaying.quasistatic import quasistatic
+from armeval.evaluate.replaying.sticking_ratio import sticking_ratio
 from armeval.model.planned_path import PlannedPath
 from armeval.model.servo import Servo
 from tests.planar_arms import harmonic_map, planar_arm

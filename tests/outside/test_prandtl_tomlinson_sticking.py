@@ -8,8 +8,8 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
-from armeval.evaluate.cause_routes import map_ratio
-from armeval.evaluate.rests import sticking_events
+from armeval.evaluate.sticking.cause_routes import map_ratio
+from armeval.evaluate.sticking.rests import sticking_events
 from armeval.model.trial import StickingRule
 from tests.evaluate.sticking_cases import PERIOD, Case, lap, ramp
 

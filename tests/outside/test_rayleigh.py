@@ -7,7 +7,7 @@ simulation gives 0.00165. astropy's documentation of ``rayleightest``: 130, 90, 
 import numpy as np
 import pytest
 
-from armeval.evaluate.periodicity import rayleigh
+from armeval.evaluate.sticking.periodicity import rayleigh
 
 ZAR = np.radians([45.0, 55.0, 81.0, 96.0, 110.0, 117.0, 132.0, 154.0])
 

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 import pytest
 
-from armeval.evaluate.replay import Replay, replay
+from armeval.evaluate.replaying.replay import Replay, replay
 from armeval.kernels.chain import tip_jacobians, tip_positions
 from armeval.model.arm import Arm
 from armeval.model.cogmap import CogMap

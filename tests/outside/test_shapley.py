@@ -10,7 +10,7 @@ only the left glove does. Shares 3/4, 1/4, 0.
 import numpy as np
 import pytest
 
-from armeval.evaluate.owen_value import coalitions, owen_value
+from armeval.evaluate.replaying.owen_value import coalitions, owen_value
 
 
 def pairs(left: int, right: int) -> np.ndarray:

@@ -17,10 +17,10 @@ from functools import cache
 import numpy as np
 import pytest
 
-from armeval.evaluate.cause import find_causes
-from armeval.evaluate.predicted_lap import PredictedLap
-from armeval.evaluate.replay import replay
-from armeval.evaluate.rests import sticking_events
+from armeval.evaluate.replaying.predicted_lap import PredictedLap
+from armeval.evaluate.replaying.replay import replay
+from armeval.evaluate.sticking.cause import find_causes
+from armeval.evaluate.sticking.rests import sticking_events
 from armeval.model.trial import Compensation, Run, StickingRule
 from tests.outside.sticking_plants import PERIOD, StickingLap, sticking_lap
 from tests.plant.truth import rests

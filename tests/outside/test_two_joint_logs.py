@@ -12,7 +12,7 @@ import numpy as np
 import pytest
 
 from armeval.evaluate.measure import measure
-from armeval.evaluate.tracks import tips
+from armeval.evaluate.measuring.tracks import tips
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain
 from armeval.model.drive import Drive

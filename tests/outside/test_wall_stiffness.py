@@ -10,8 +10,8 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from armeval.evaluate.perception import noticed
-from armeval.evaluate.wall_stiffness import least_damping, stiffest_by_damping, stiffest_by_friction
+from armeval.evaluate.feeling.perception import noticed
+from armeval.evaluate.feeling.wall_stiffness import least_damping, stiffest_by_damping, stiffest_by_friction
 from armeval.files.thresholds_file import read_thresholds
 
 

@@ -7,7 +7,7 @@ import numpy as np
 import pytest
 
 from armeval.errors import InputWarning
-from armeval.evaluate.cog_orders import orders
+from armeval.evaluate.cogging.cog_orders import orders
 from armeval.files.arm_file import read_arm
 from tests.plant import make_maps, shipped
 

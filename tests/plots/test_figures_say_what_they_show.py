@@ -7,8 +7,8 @@ import pytest
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
-from armeval.evaluate.along_path import ErrorAlongPath
-from armeval.evaluate.error_orders import ErrorOrders
+from armeval.evaluate.measuring.along_path import ErrorAlongPath
+from armeval.evaluate.measuring.error_orders import ErrorOrders
 from armeval.plots.along_path import along_path_plot, band_plot
 from armeval.plots.cog_map import cog_map_plot, cog_orders_plot
 from armeval.plots.error_orders import error_orders_plot

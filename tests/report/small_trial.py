@@ -8,7 +8,7 @@ from dataclasses import replace
 import numpy as np
 
 from armeval.evaluate.plan import plan_trial
-from armeval.evaluate.replay import replay
+from armeval.evaluate.replaying.replay import replay
 from armeval.model.arm import Arm
 from armeval.model.chain import Chain
 from armeval.model.drive import Drive

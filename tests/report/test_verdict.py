@@ -7,7 +7,7 @@ from dataclasses import replace
 import pytest
 
 from armeval.evaluate.compare import Comparison
-from armeval.evaluate.joint_shares import JointShare
+from armeval.evaluate.measuring.joint_shares import JointShare
 from armeval.evaluate.run_errors import RunErrors
 from armeval.report.answers import Answers
 from armeval.report.merit import merits

@@ -1,0 +1,1 @@
+"""Cog maps: from measured angles to orders, and what a compensation table leaves of them."""

@@ -1,0 +1,1 @@
+"""What a hand meets: force, ripple, what is noticed, what the arm can render."""

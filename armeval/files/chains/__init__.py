@@ -1,0 +1,1 @@
+"""URDF: its text, its tree, the chain."""

@@ -1,0 +1,1 @@
+"""Joint logs: columns, clock, counters, doubts, repairs."""

@@ -1,0 +1,1 @@
+"""Text tables: dialect, columns, rows, and what is wrong in them."""
