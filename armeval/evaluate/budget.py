@@ -108,10 +108,11 @@ def budget(
 ) -> Budget:
     """Tell which cause accounts for how much of the tip error, bare and compensated.
 
-    The replay is repeated with every set of causes acting. What a cause accounts for is its Shapley value in the game
-    in which a set of causes is worth its mean squared error; cogging and friction are split over the joints by the Owen
-    value (see :mod:`armeval.evaluate.replaying.owen_value`). With what is left when all causes are out, the parts add up
-    to the mean squared error exactly. The parts are those of the replay: no more certain than the files that it is made from.
+    The replay is repeated with every set of causes acting. What a cause accounts for is its Shapley value in the
+    game in which a set of causes is worth its mean squared error; cogging and friction are split over the joints by
+    the Owen value (see :mod:`armeval.evaluate.replaying.owen_value`). With what is left when all causes are out,
+    the parts add up to the mean squared error exactly. The parts are those of the replay: no more certain than the
+    files that it is made from.
 
     Parameters
     ----------

@@ -5,8 +5,9 @@ equations of motion in balance,
 
     J^T F = M q'' + h - tau_drive - tau_cog + tau_friction,
 
-with J^T undone as in :mod:`armeval.evaluate.feeling.tip_directions`. Every term is linear in F, so each joint's torque
-of each kind has its own force, and they add up. A force with the motion is one that the hand must exert: it is held back.
+with J^T undone as in :mod:`armeval.evaluate.feeling.tip_directions`. Every term is linear in F, so each joint's
+torque of each kind has its own force, and they add up. A force with the motion is one that the hand must exert: it is
+held back.
 """
 
 from __future__ import annotations
