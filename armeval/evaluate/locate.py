@@ -11,7 +11,7 @@ from armeval.errors import InputError
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.evaluate.lap_track import LapTrack
 from armeval.evaluate.replaying.sticking_ratio import StickingRatio
-from armeval.evaluate.sticking.action import action
+from armeval.evaluate.sticking.action import action, fastest_told
 from armeval.evaluate.sticking.carried_through import CarriedThrough, carried_through
 from armeval.evaluate.sticking.cause import Counterfactual, find_causes
 from armeval.evaluate.sticking.regions import Counterpart, Region, counterparts, regions
@@ -234,8 +234,9 @@ def locate(
         found = [event for track in laps for event in sticking_events(arm, track, rule)]
         found = find_causes(arm, laps, found, rule=rule, compensation=compensation, counterfactual=counterfactual)
         rests = tuple(event for event in found if event.kind == "rest")
+        asked = fastest_told(laps)
         merged = tuple(
-            replace(region, action=action(arm, region, laps, rests, compensation=compensation))
+            replace(region, action=action(arm, region, laps, rests, asked=asked, compensation=compensation))
             for region in regions(laps, rests)
         )
         jumps = tuple(event for event in found if event.kind == "jump")

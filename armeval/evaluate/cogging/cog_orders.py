@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, replace
+from functools import lru_cache
 from typing import Literal
 
 import numpy as np
@@ -19,6 +20,8 @@ FALSE_ALARM = 0.01
 
 LEAST_SHARE = 1e-3
 """Orders below this share of the largest amplitude are not worth telling."""
+
+_MAPS = 64  # so many maps are remembered: every rest of a joint asks the same of its map
 
 
 @dataclass(frozen=True)
@@ -168,6 +171,7 @@ def noise_floor(cog_map: CogMap) -> float:
     return cog_map.noise**2 / (2.0 * cog_map.bandwidth)
 
 
+@lru_cache(maxsize=_MAPS)
 def orders(
     cog_map: CogMap,
     *,
@@ -216,11 +220,14 @@ def significant_part(cog_map: CogMap) -> CogMap:
     return replace(cog_map, torque=np.fft.irfft(padded * cog_map.torque.size, cog_map.torque.size))
 
 
+@lru_cache(maxsize=_MAPS)
 def significant_coefficients(cog_map: CogMap) -> ComplexArray:
     """Shape (bandwidth + 1,). The map's coefficients with everything set to 0 that does not stand out of the noise."""
     coefficients = cog_map.spectrum
     significant, _ = significant_orders(coefficients, noise_power=noise_floor(cog_map))
-    return np.where(significant, coefficients, 0.0)
+    kept = np.where(significant, coefficients, 0.0)
+    kept.setflags(write=False)
+    return kept
 
 
 def _fine_grid(cog_map: CogMap, coefficients: ComplexArray) -> FloatArray:
@@ -255,6 +262,7 @@ def _crossings(angle: FloatArray, coefficients: ComplexArray, rising: bool) -> F
     return np.sort(np.mod(root, 2.0 * np.pi))
 
 
+@lru_cache(maxsize=_MAPS)
 def detents(cog_map: CogMap) -> FloatArray:
     """Stable rest angles of the cogging torque, where it crosses zero falling.
 
@@ -268,7 +276,9 @@ def detents(cog_map: CogMap) -> FloatArray:
     coefficients = significant_coefficients(cog_map)
     if not coefficients.any():
         return np.empty(0)
-    return _crossings(_fine_grid(cog_map, coefficients), coefficients, rising=False)
+    found = _crossings(_fine_grid(cog_map, coefficients), coefficients, rising=False)
+    found.setflags(write=False)
+    return found
 
 
 def slope(cog_map: CogMap, angle: FloatArray) -> FloatArray:

@@ -7,6 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 
+from armeval.arrays import FloatArray
 from armeval.evaluate.cogging.cog_loss import residual
 from armeval.evaluate.cogging.cog_orders import orders
 from armeval.evaluate.lap_track import LapTrack
@@ -23,12 +24,18 @@ from armeval.units import angle_text, significant, torque_text
 _CLEARLY_FASTER = 1.2  # times the fastest target at which the joint rested: from there it is said to carry through
 
 
+def fastest_told(tracks: Sequence[LapTrack]) -> FloatArray:
+    """Shape (n,) [rad/s]. How fast a run asked each joint to move, but for the fastest hundredth of the time."""
+    return np.asarray(np.max([np.quantile(np.abs(target_speed(track)), 0.99, axis=0) for track in tracks], axis=0))
+
+
 def action(
     arm: Arm,
     region: Region,
     tracks: Sequence[LapTrack],
     events: Sequence[StickingEvent],
     *,
+    asked: FloatArray,
     compensation: Compensation,
 ) -> str:
     """Say what would help in a region.
@@ -41,6 +48,8 @@ def action(
         Where it sticks.
     tracks, events
         The laps of its run, and all their rests.
+    asked
+        Shape (n,) [rad/s]. How fast the run asked each joint to move: :func:`fastest_told`.
     compensation
         What the firmware's table can do.
     """
@@ -65,8 +74,9 @@ def action(
             f"Look at the other joints, the load and the cables first: neither {joint}'s map nor its friction "
             f"explains {torque_text(abs(region.pull))} of pull here."
         )
-    carry = _carry(region, tracks, events, j)
-    K = _at_region(joint_stiffness_along(arm, track.angle)[:, j], track, region)
+    carry = _carry(region, events, float(asked[j]))
+    pose = _pose(track, region)
+    K = float(joint_stiffness_along(arm, pose)[0, j])
     if region.cause == "friction":
         dead_band = (drive.coulomb_friction + drive.breakaway_friction) / K
         return (
@@ -77,7 +87,7 @@ def action(
         return f"Measure the cog map of {joint} first: its rests keep to the pitch of its motor.{carry}"
     table = compensation if tracks[0].compensated else None
     ratio = map_ratio(drive, region.events[0], K, table)
-    J = _at_region(inertia_along(arm, track.angle)[:, j], track, region)
+    J = float(inertia_along(arm, pose)[0, j])
     stiffer = _stiffer(arm, j, K, max(ratio, 1.0) * K, J)
     if table is None:
         return f"Compensate {joint}'s cogging first{stiffer}.{carry}"
@@ -125,10 +135,9 @@ def _most_cogging(cog_map: CogMap | None, gear_ratio: float) -> float:
     return abs(gear_ratio) * float(np.abs(cog_map.torque).max()) if cog_map is not None else 0.0
 
 
-def _carry(region: Region, tracks: Sequence[LapTrack], events: Sequence[StickingEvent], j: int) -> str:
+def _carry(region: Region, events: Sequence[StickingEvent], asked: float) -> str:
     """Say above which speed the joint never rested in this run, if it was ever asked to be clearly faster."""
     fastest_rest = max(event.target_speed for event in events if event.joint == region.joint)
-    asked = max(float(np.quantile(np.abs(target_speed(track)[:, j]), 0.99)) for track in tracks)
     if asked < _CLEARLY_FASTER * fastest_rest:
         return ""
     factor = fastest_rest / region.target_speed
@@ -138,5 +147,7 @@ def _carry(region: Region, tracks: Sequence[LapTrack], events: Sequence[Sticking
     )
 
 
-def _at_region(values: np.typing.NDArray[np.float64], track: LapTrack, region: Region) -> float:
-    return float(np.interp(0.5 * (region.start_arc + region.end_arc), track.arc, values))
+def _pose(track: LapTrack, region: Region) -> FloatArray:
+    """Shape (1, n): the joint angles in the middle of the region."""
+    middle = 0.5 * (region.start_arc + region.end_arc)
+    return np.array([[np.interp(middle, track.arc, angle) for angle in track.angle.T]])

@@ -6,7 +6,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from armeval.evaluate.sticking.action import action
+from armeval.evaluate.sticking.action import action, fastest_told
 from armeval.evaluate.sticking.regions import Region
 from armeval.evaluate.sticking.sticking_event import StickingEvent
 from armeval.model.trial import Compensation
@@ -34,7 +34,8 @@ def said(case, cause, *, arm=None, compensated=False, compensation=None, faster=
         motor_angle=0.1, direction=direction, target_speed=SLOW, laps=1, of_laps=1, dwell=0.1, lag=1e-3,
         release_angle=0.01, release_distance=1e-3, pull=0.02, harm=0.1, cause=cause, events=(event,),
     )  # fmt: skip
-    return action(arm, region, [track], [event], compensation=compensation or Compensation())
+    asked = fastest_told([track])
+    return action(arm, region, [track], [event], asked=asked, compensation=compensation or Compensation())
 
 
 def test_bare_cogging_names_the_stiffness_at_which_the_sticking_ratio_is_one():
