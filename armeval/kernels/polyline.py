@@ -110,12 +110,20 @@ def _nearest_near(
         distance[j], found[j] = best, best_s
 
 
+@jit
 def distances_at(points: FloatArray, expected: FloatArray, path: FloatArray, arc: FloatArray) -> FloatArray:
     """Distance of each point (k, 3) from the polyline's point at its expected arc length (k,) [m]."""
-    square = np.zeros(len(points))
-    for r in range(3):
-        square += (points[:, r] - np.interp(expected, arc, path[:, r])) ** 2
-    return np.asarray(np.sqrt(square))
+    k = points.shape[0]
+    distance = np.empty(k)
+    i = 0
+    for j in range(k):
+        i = _segment_at(arc, expected[j], i)
+        share = min(max((expected[j] - arc[i]) / (arc[i + 1] - arc[i]), 0.0), 1.0)
+        square = 0.0
+        for r in range(3):
+            square += (points[j, r] - path[i, r] - share * (path[i + 1, r] - path[i, r])) ** 2
+        distance[j] = np.sqrt(square)
+    return distance
 
 
 def progress(points: FloatArray, path: FloatArray, arc: FloatArray, start: float) -> FloatArray:

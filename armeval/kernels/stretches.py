@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import itertools
 from typing import NamedTuple
 
 import numpy as np
@@ -34,6 +33,7 @@ class StretchSums(NamedTuple):
     speed_square: FloatArray
 
 
+@jit
 def stretch_sums(
     time: FloatArray,
     arc: FloatArray,
@@ -58,39 +58,51 @@ def stretch_sums(
     corners
         Shape (c,) [m]. Arc lengths of the ends of the c - 1 stretches. A target on a corner belongs to what follows.
     """
-    stretch = np.searchsorted(corners[1:-1], arc, side="right")
-    segment = np.searchsorted(path_arc[1:-1], arc, side="right")
-    count = len(corners) - 1
-    first = np.searchsorted(stretch, np.arange(count + 1))
-
-    def summed(values: FloatArray) -> FloatArray:
-        return np.asarray(np.bincount(stretch, values, count), dtype=np.float64)
-
-    def greatest(values: FloatArray) -> FloatArray:
-        return np.array([values[a:b].max(initial=0.0) for a, b in itertools.pairwise(first)])
-
-    way = np.diff(path, axis=0) / np.diff(path_arc)[:, None]
-    error = tip - target_tip
-    square, along = np.einsum("kr,kr->k", error, error), np.einsum("kr,kr->k", error, way[segment])
-    across_square = np.maximum(square - along * along, 0.0)
-    sample = np.arange(len(time))
-    before, after = np.maximum(sample - 1, 0), np.minimum(sample + 1, len(time) - 1)
-    speed = (arc[after] - arc[before]) / (time[after] - time[before])
-    return StretchSums(
-        samples=np.bincount(stretch, minlength=count).astype(np.float64),
-        tracking_square=summed(square),
-        tracking_max=np.sqrt(greatest(square)),
-        deviation_square=summed(deviation * deviation),
-        deviation_max=greatest(deviation),
-        along=summed(along),
-        along_square=summed(along * along),
-        across_square=summed(across_square),
-        across_max=np.sqrt(greatest(across_square)),
-        lag=summed(lag),
-        lag_max=greatest(np.abs(lag)),
-        drift=summed(lag * speed),
-        speed_square=summed(speed * speed),
+    k, stretches, last = len(time), len(corners) - 1, len(path_arc) - 2
+    sums = StretchSums(
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
+        np.zeros(stretches),
     )
+    stretch = segment = 0
+    for j in range(k):
+        while stretch < stretches - 1 and arc[j] >= corners[stretch + 1]:
+            stretch += 1
+        while segment < last and arc[j] >= path_arc[segment + 1]:
+            segment += 1
+        length = path_arc[segment + 1] - path_arc[segment]
+        square = along = 0.0
+        for r in range(3):
+            e = tip[j, r] - target_tip[j, r]
+            square += e * e
+            along += e * (path[segment + 1, r] - path[segment, r]) / length
+        across_square = max(square - along * along, 0.0)
+        before, after = max(j - 1, 0), min(j + 1, k - 1)
+        speed = (arc[after] - arc[before]) / (time[after] - time[before])
+        sums.samples[stretch] += 1.0
+        sums.tracking_square[stretch] += square
+        sums.tracking_max[stretch] = max(sums.tracking_max[stretch], np.sqrt(square))
+        sums.deviation_square[stretch] += deviation[j] * deviation[j]
+        sums.deviation_max[stretch] = max(sums.deviation_max[stretch], deviation[j])
+        sums.along[stretch] += along
+        sums.along_square[stretch] += along * along
+        sums.across_square[stretch] += across_square
+        sums.across_max[stretch] = max(sums.across_max[stretch], np.sqrt(across_square))
+        sums.lag[stretch] += lag[j]
+        sums.lag_max[stretch] = max(sums.lag_max[stretch], abs(lag[j]))
+        sums.drift[stretch] += lag[j] * speed
+        sums.speed_square[stretch] += speed * speed
+    return sums
 
 
 @jit
