@@ -23,7 +23,7 @@ from armeval.evaluate.run_errors import (
 from armeval.evaluate.threads import spread
 from armeval.model.joint_log import JointLog
 from armeval.model.trajectory import Trajectory
-from armeval.model.trial import Run, Trial
+from armeval.model.trial import Run, Trial, find_run
 from armeval.progress import Progress, silent
 
 if TYPE_CHECKING:
@@ -77,11 +77,7 @@ class Measurement:
         InputError
             If there is none of that name.
         """
-        for run in self.runs:
-            if run.name == name:
-                return run
-        have = ", ".join(f"`{run.name}`" for run in self.runs)
-        raise InputError(f"there is no measured run `{name}`", f"runs with logs: {have}")
+        return find_run(self.runs, name, what="measured run")
 
     def to_frame(self) -> pd.DataFrame:
         """One row a run and kind of error, lengths in metres."""

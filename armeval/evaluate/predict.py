@@ -6,7 +6,6 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
-from armeval.errors import InputError
 from armeval.evaluate.cogging.modelled_arm import modelled, unmapped
 from armeval.evaluate.document import JsonValue, as_text, document
 from armeval.evaluate.lap_track import LapTrack
@@ -19,7 +18,7 @@ from armeval.evaluate.replaying.sticking_ratio import StickingRatio, sticking_ra
 from armeval.evaluate.run_errors import RunErrors, run_errors, runs_frame
 from armeval.evaluate.sticking.cause import Counterfactual
 from armeval.model.trajectory import Trajectory
-from armeval.model.trial import Trial
+from armeval.model.trial import Trial, find_run
 from armeval.progress import Progress, silent
 
 if TYPE_CHECKING:
@@ -115,10 +114,7 @@ class Prediction:
         InputError
             If there is none of that name.
         """
-        for run in self.runs:
-            if run.name == name:
-                return run
-        raise InputError(f"there is no run `{name}`", "runs here: " + ", ".join(f"`{run.name}`" for run in self.runs))
+        return find_run(self.runs, name)
 
     def to_frame(self) -> pd.DataFrame:
         """One row a run and kind of error, lengths in metres."""

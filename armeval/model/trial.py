@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass, field
-from typing import Literal
+from typing import Literal, Protocol, TypeVar
 
 from armeval.errors import Finding, InputError
 from armeval.model.arm import Arm
@@ -76,6 +77,33 @@ class Run:
     name: str
     compensated: bool
     laps: tuple[JointLog, ...] = ()
+
+
+class Named(Protocol):
+    """What bears a run's name."""
+
+    @property
+    def name(self) -> str:
+        """The run's name."""
+        ...
+
+
+AnyRun = TypeVar("AnyRun", bound=Named)
+
+
+def find_run(runs: Sequence[AnyRun], name: str, *, what: str = "run", file: str = "") -> AnyRun:
+    """Find a run, or what was worked out for it, by the run's name.
+
+    Raises
+    ------
+    InputError
+        If there is none of that name; with the names that there are.
+    """
+    for run in runs:
+        if run.name == name:
+            return run
+    have = ", ".join(f"`{run.name}`" for run in runs)
+    raise InputError(f"there is no {what} `{name}`", f"{what}s here: {have}", file=file)
 
 
 @dataclass(frozen=True, eq=False)
@@ -160,8 +188,4 @@ class Trial:
         InputError
             If there is none of that name.
         """
-        for run in self.runs:
-            if run.name == name:
-                return run
-        have = ", ".join(f"`{run.name}`" for run in self.runs)
-        raise InputError(f"there is no run `{name}`", f"runs here: {have}", file=self.source)
+        return find_run(self.runs, name, file=self.source)
