@@ -9,7 +9,7 @@ from __future__ import annotations
 import numpy as np
 
 from armeval.arrays import FloatArray
-from armeval.kernels.compile import jit
+from armeval.kernels.compile import jit, jit_part
 
 _TURN = 2.0 * np.pi
 
@@ -36,19 +36,22 @@ def hermite_table(values: FloatArray) -> FloatArray:
     return np.ascontiguousarray(np.column_stack([values, np.fft.irfft(spectrum, n=m)]))
 
 
-@jit
-def periodic_value(table: FloatArray, angle: float) -> float:
-    """Value of the function at an angle [rad], any number of turns away; the table is that of :func:`hermite_table`."""
+@jit_part
+def _cell(table: FloatArray, angle: float) -> tuple[float, float, float, float, float]:
+    """Place within its cell (0 to 1), value at its start, rise over it, and both slopes per cell."""
     m = table.shape[0]
     place = angle * (m / _TURN)
     node = np.floor(place)
-    t = place - node
     i = int(node) % m
     j = i + 1 if i + 1 < m else 0
     step = _TURN / m
-    y0, y1 = table[i, 0], table[j, 0]
-    d0, d1 = step * table[i, 1], step * table[j, 1]
-    rise = y1 - y0
+    return place - node, table[i, 0], table[j, 0] - table[i, 0], step * table[i, 1], step * table[j, 1]
+
+
+@jit
+def periodic_value(table: FloatArray, angle: float) -> float:
+    """Value of the function at an angle [rad], any number of turns away; the table is that of :func:`hermite_table`."""
+    t, y0, rise, d0, d1 = _cell(table, angle)
     value: float = y0 + t * (d0 + t * ((3.0 * rise - 2.0 * d0 - d1) + t * (d0 + d1 - 2.0 * rise)))
     return value
 
@@ -56,17 +59,9 @@ def periodic_value(table: FloatArray, angle: float) -> float:
 @jit
 def periodic_slope(table: FloatArray, angle: float) -> float:
     """Slope of the function per radian at an angle [rad], any number of turns away."""
-    m = table.shape[0]
-    place = angle * (m / _TURN)
-    node = np.floor(place)
-    t = place - node
-    i = int(node) % m
-    j = i + 1 if i + 1 < m else 0
-    step = _TURN / m
-    d0, d1 = step * table[i, 1], step * table[j, 1]
-    rise = table[j, 0] - table[i, 0]
-    slope: float = (d0 + t * (2.0 * (3.0 * rise - 2.0 * d0 - d1) + 3.0 * t * (d0 + d1 - 2.0 * rise))) / step
-    return slope
+    t, _, rise, d0, d1 = _cell(table, angle)
+    per_cell: float = d0 + t * (2.0 * (3.0 * rise - 2.0 * d0 - d1) + 3.0 * t * (d0 + d1 - 2.0 * rise))
+    return per_cell * (table.shape[0] / _TURN)
 
 
 @jit
