@@ -61,7 +61,8 @@ def periodic_slope(table: FloatArray, angle: float) -> float:
     """Slope of the function per radian at an angle [rad], any number of turns away."""
     t, _, rise, d0, d1 = _cell(table, angle)
     per_cell: float = d0 + t * (2.0 * (3.0 * rise - 2.0 * d0 - d1) + 3.0 * t * (d0 + d1 - 2.0 * rise))
-    return per_cell * (table.shape[0] / _TURN)
+    slope: float = per_cell * (table.shape[0] / _TURN)
+    return slope
 
 
 @jit
